@@ -1,0 +1,70 @@
+"""The one place that owns numba's options and its cache on disk.
+
+The stamp of numba's own cache covers only a function's own file, so that a cached caller would go
+on answering with the old code of a callee that was edited in another file. The cache therefore
+lies in a folder named by the digest of all sources of the package, the versions of numba and numpy
+and the processor, and is set before any kernel is compiled.
+"""
+
+import hashlib
+import os
+import tempfile
+from functools import cache
+from pathlib import Path
+
+import numba
+import numpy
+
+
+def _digest() -> str:
+    """Digest of every source file of the package and of what else shapes the machine code."""
+    root = Path(__file__).parent
+    digest = hashlib.sha256(f"{numba.__version__} {numpy.__version__}".encode())
+    for path in sorted(root.rglob("*.py")):
+        digest.update(path.relative_to(root).as_posix().encode())
+        digest.update(path.read_bytes())
+    return digest.hexdigest()[:16]
+
+
+def _writable(folder: Path) -> bool:
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+        with tempfile.TemporaryFile(dir=folder):
+            return True
+    except OSError:
+        return False
+
+
+@cache
+def cache_folder() -> Path | None:
+    """Where compiled kernels are kept, or None where nothing can be written.
+
+    ``LUMENTRACE_CACHE`` names another parent folder.
+    """
+    parent = os.environ.get("LUMENTRACE_CACHE") or os.path.join(
+        os.environ.get("XDG_CACHE_HOME") or os.path.expanduser("~/.cache"), "lumentrace"
+    )
+    folder = Path(parent) / f"kernels-{_digest()}"
+    return folder if _writable(folder) else None
+
+
+def is_warm() -> bool:
+    """Whether compiled kernels of exactly these sources are on disk."""
+    folder = cache_folder()
+    return folder is not None and any(folder.rglob("*.nbi"))
+
+
+if cache_folder() is not None:
+    numba.config.CACHE_DIR = str(cache_folder())
+
+_OPTIONS = {
+    "nogil": True,  # blocks run on plain threads
+    "cache": cache_folder() is not None,
+    "error_model": "numpy",  # division by zero gives inf, as the slab test needs
+    "fastmath": False,  # contraction would break the watertight edge test
+}
+
+
+def kernel(function):
+    """Compile on first call, cached on disk, free of the interpreter's lock."""
+    return numba.njit(**_OPTIONS)(function)

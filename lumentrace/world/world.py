@@ -1,0 +1,63 @@
+"""A scene made ready for tracing: flat arrays, and the names of their rows."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from lumentrace.errors import Notice
+from lumentrace.scene.model import Scene
+from lumentrace.world.arrays import WorldArrays
+
+
+@dataclass(frozen=True)
+class PartFacts:
+    """What `check` tells of one part."""
+
+    name: str
+    copies: int
+    size: np.ndarray  # (3,) of one copy, in the study's unit
+    faces: int
+    medium: str
+    closed: bool
+    area: float
+    volume: float | None  # of a closed mesh
+    mesh_digest: str  # sha256 of the mesh file
+
+
+@dataclass(frozen=True)
+class TagFacts:
+    """One part:tag of one copy."""
+
+    name: str
+    faces: int
+    area: float  # study's unit squared
+    share: float  # of the part's area
+    finish: str  # as shown: "white_paint", or "front a, back b"
+
+
+@dataclass(frozen=True)
+class ContactFacts:
+    """Two parts that touch: everything that was found, over all copies."""
+
+    parts: tuple[str, str]
+    area: float
+    gap: float  # the largest, in the study's unit
+    taken: str  # "dry" or "optical contact"
+
+
+@dataclass(frozen=True)
+class World:
+    scene: Scene
+    arrays: WorldArrays
+    part_names: tuple[str, ...]
+    tag_names: tuple[str, ...]  # "tray:default", row for row with arrays.tags
+    body_names: tuple[str, ...]  # "die", or "die (3)" for the third copy
+    source_names: tuple[str, ...]
+    group_names: tuple[str, ...]
+    detector_names: tuple[str, ...]
+    source_flux: np.ndarray  # (S,) float64 W over all copies
+    source_start: tuple[str, ...]  # what each source's rays start in, as `check` shows it
+    parts: tuple[PartFacts, ...]
+    tags: tuple[TagFacts, ...]
+    contacts: tuple[ContactFacts, ...]
+    notices: tuple[Notice, ...]
