@@ -10,9 +10,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-# Events, also the lobes of the what-if sums. The order is stored in files: only append.
-EVENTS = ("through", "reflect", "total", "mirror", "scatter", "scatter_through", "bulk")
-THROUGH, REFLECT, TOTAL, MIRROR, SCATTER, SCATTER_THROUGH, BULK = range(len(EVENTS))
+from lumentrace.models.events import EVENTS
 
 STEPS_MAX = 48  # steps of a path that are kept; a longer path is counted in "other"
 KEPT_RAYS = 8  # ray numbers kept of each path, to be traced again for pictures
@@ -26,6 +24,11 @@ REASONS = (
     "more parts meet in one place than the engine holds",
     "leaves a part that it is not inside; the mesh may be open there",
 )
+
+
+def what_if_keys(n_tags: int, n_parts: int) -> int:
+    """Keys of the what-if sums: (tag, event), tags, parts."""
+    return n_tags * (len(EVENTS) + 1) + n_parts
 
 
 def account_rows(n_tags: int, n_parts: int) -> int:
