@@ -16,13 +16,18 @@ import numba
 import numpy
 
 
+COMPILED = ("jit.py", "kernels", "models", "engine", "world/arrays.py")  # all that kernels depend on
+
+
 def _digest() -> str:
-    """Digest of every source file of the package and of what else shapes the machine code."""
+    """Digest of every source file that compiled code comes from, and of what else shapes it."""
     root = Path(__file__).parent
     digest = hashlib.sha256(f"{numba.__version__} {numpy.__version__}".encode())
-    for path in sorted(root.rglob("*.py")):
-        digest.update(path.relative_to(root).as_posix().encode())
-        digest.update(path.read_bytes())
+    for place in COMPILED:
+        path = root / place
+        for file in sorted(path.rglob("*.py")) if path.is_dir() else [path]:
+            digest.update(file.relative_to(root).as_posix().encode())
+            digest.update(file.read_bytes())
     return digest.hexdigest()[:16]
 
 
@@ -66,5 +71,19 @@ _OPTIONS = {
 
 
 def kernel(function):
-    """Compile on first call, cached on disk, free of the interpreter's lock."""
+    """Compile on first call, cached on disk, free of the interpreter's lock.
+
+    Without numba's reference counts: they took three quarters of a ray's time, since every look at
+    a row of an array is counted. In return such a function can make no array, nor return one.
+    """
+    return numba.njit(**_OPTIONS, _nrt=False)(function)
+
+
+def uncached_kernel(function):
+    """As `kernel`, for a function that stands in no file; its callers are cached with it inside."""
+    return numba.njit(**{**_OPTIONS, "cache": False}, _nrt=False)(function)
+
+
+def allocating_kernel(function):
+    """As `kernel`, for the few functions outside the hot loop that make arrays."""
     return numba.njit(**_OPTIONS)(function)

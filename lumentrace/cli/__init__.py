@@ -1,0 +1,1 @@
+"""The command line: words in, text or JSON out; what is done is in `lumentrace.study`."""

@@ -7,6 +7,7 @@ run's estimate is the mean over the 64 batches.
 """
 
 from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 
@@ -31,9 +32,38 @@ def what_if_keys(n_tags: int, n_parts: int) -> int:
     return n_tags * (len(EVENTS) + 1) + n_parts
 
 
-def account_rows(n_tags: int, n_parts: int) -> int:
-    """Rows of the account: tags, bulk of parts, whole parts, then the five of the study."""
-    return n_tags + 2 * n_parts + 5
+class AccountRows(NamedTuple):
+    """Where things stand along the account's axis of rows; `count` is the length of the axis.
+
+    tags, then the bulk of each part, the bulk of the surroundings, the whole of each part (its
+    tags and its bulk together, so these repeat what stands before), then the study's five.
+    """
+
+    bulk: int
+    surroundings: int
+    part: int
+    detected: int
+    escaped: int
+    cut_off: int
+    unresolved: int
+    sampling: int
+    count: int
+
+
+def account_rows(n_tags: int, n_parts: int) -> AccountRows:
+    """The rows for so many tags and parts; tag i is row i."""
+    study = n_tags + 2 * n_parts + 1
+    return AccountRows(
+        bulk=n_tags,
+        surroundings=n_tags + n_parts,
+        part=n_tags + n_parts + 1,
+        detected=study,
+        escaped=study + 1,
+        cut_off=study + 2,
+        unresolved=study + 3,
+        sampling=study + 4,
+        count=study + 5,
+    )
 
 
 def step_code(tag: int, event: int, run: int) -> int:
@@ -74,8 +104,7 @@ class Sums:
 
     rounds: int  # blocks = 64 * rounds, rays = 65536 * rounds
     emitted: np.ndarray  # (G,) float64 W, exact: not sampled
-    account: np.ndarray  # (G, A, 64) float64: [tags | bulk of parts | whole parts |
-    #   detected, escaped, cut_off, unresolved, sampling]; "whole parts" repeats what stands before
+    account: np.ndarray  # (G, A, 64) float64 W, rows by account_rows
     account_square: np.ndarray  # (G, A) float64 sum over rays of (the ray's total)^2
     flux: np.ndarray  # (D, G, 64) float64 response x W
     flux_square: np.ndarray  # (D, G) float64

@@ -6,7 +6,7 @@ volume hierarchies", IEEE Symposium on Interactive Ray Tracing (2007)).
 
 import numpy as np
 
-from lumentrace.jit import kernel
+from lumentrace.jit import allocating_kernel, kernel
 
 _BINS = 16
 _LEAF_MAX = 4
@@ -15,25 +15,19 @@ _DEPTH_MAX = 90
 
 
 @kernel
-def enters_box(lower, upper, ox, oy, oz, ix, iy, iz, t_far):
+def enters_box(lower, upper, node, origin, inverse, t_far):
     """Smallest t >= 0 at which the ray is inside the box, or inf when it misses it up to t_far.
 
-    (ix, iy, iz) are the reciprocals of the direction. Boxes are padded by more than the rounding
-    of this test when the hierarchy is built.
+    lower, upper: (N, 3), box `node` is meant: a row by number, since a view of it would cost more than
+    the test. inverse: the reciprocals of the direction. Boxes are padded by more than the rounding of this
+    test when the hierarchy is built.
     """
     near, far = 0.0, t_far
-    a = (lower[0] - ox) * ix
-    b = (upper[0] - ox) * ix
-    near = max(near, min(a, b))
-    far = min(far, max(a, b))
-    a = (lower[1] - oy) * iy
-    b = (upper[1] - oy) * iy
-    near = max(near, min(a, b))
-    far = min(far, max(a, b))
-    a = (lower[2] - oz) * iz
-    b = (upper[2] - oz) * iz
-    near = max(near, min(a, b))
-    far = min(far, max(a, b))
+    for k in range(3):
+        a = (lower[node, k] - origin[k]) * inverse[k]
+        b = (upper[node, k] - origin[k]) * inverse[k]
+        near = max(near, min(a, b))
+        far = min(far, max(a, b))
     return near if near <= far else np.inf
 
 
@@ -56,7 +50,7 @@ def _bounds(lower, upper, order, first, last, out_lower, out_upper):
             out_upper[k] = max(out_upper[k], upper[order[i], k])
 
 
-@kernel
+@allocating_kernel
 def _best_split(lower, upper, order, first, last):
     """(axis, position, cost) of the best plane between bins of box centres; axis -1: none."""
     best_axis, best_position, best_cost = -1, 0.0, np.inf
@@ -125,7 +119,7 @@ def _partition(lower, upper, order, first, last, axis, position):
     return left
 
 
-@kernel
+@allocating_kernel
 def build_tree(lower, upper):
     """Hierarchy over n boxes: arrays (lower, upper, child, count, order) of `world.arrays.Tree`.
 

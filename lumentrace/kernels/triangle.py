@@ -33,23 +33,24 @@ def shear(dx, dy, dz):
 
 
 @kernel
-def intersect(origin, sheared, a, b, c):
+def intersect(origin, sheared, vertex, a, b, c):
     """Distance t along the whole line, of either sign, and weights (u, v) of corners b and c.
 
-    origin: (x, y, z). sheared: of `shear`. a, b, c: corners, (3,) float64. t is inf for a miss;
-    an edge or a corner that is hit exactly counts as hit, for every triangle that has it.
+    origin: (x, y, z). sheared: of `shear`. a, b, c: rows of the corners in vertex, (V, 3) float64.
+    t is inf for a miss; an edge or a corner that is hit exactly counts as hit, for every triangle
+    that has it.
     """
     kx, ky, kz, sx, sy, sz = sheared
     ox, oy, oz = origin[kx], origin[ky], origin[kz]
-    az = a[kz] - oz
-    bz = b[kz] - oz
-    cz = c[kz] - oz
-    ax = (a[kx] - ox) - sx * az
-    ay = (a[ky] - oy) - sy * az
-    bx = (b[kx] - ox) - sx * bz
-    by = (b[ky] - oy) - sy * bz
-    cx = (c[kx] - ox) - sx * cz
-    cy = (c[ky] - oy) - sy * cz
+    az = vertex[a, kz] - oz
+    bz = vertex[b, kz] - oz
+    cz = vertex[c, kz] - oz
+    ax = (vertex[a, kx] - ox) - sx * az
+    ay = (vertex[a, ky] - oy) - sy * az
+    bx = (vertex[b, kx] - ox) - sx * bz
+    by = (vertex[b, ky] - oy) - sy * bz
+    cx = (vertex[c, kx] - ox) - sx * cz
+    cy = (vertex[c, ky] - oy) - sy * cz
     edge_a = cx * by - cy * bx
     edge_b = ax * cy - ay * cx
     edge_c = bx * ay - by * ax
@@ -62,3 +63,18 @@ def intersect(origin, sheared, a, b, c):
         return inf, 0.0, 0.0
     t = sz * (edge_a * az + edge_b * bz + edge_c * cz) / area
     return t, edge_b / area, edge_c / area
+
+
+@kernel
+def drawn_back(u, v, margin):
+    """Weights (u, v) of corners b and c of a hit, kept at least `margin` from every edge.
+
+    A ray that restarts from the very edge of a face may, by rounding, start on the wrong side of
+    the face behind that edge and leave a closed body. Moved along its own face by more than the
+    rounding of the intersection it starts where the geometry is plain. margin: at most 1/4.
+    """
+    w = max(1.0 - u - v, margin)
+    u = max(u, margin)
+    v = max(v, margin)
+    total = u + v + w
+    return u / total, v / total

@@ -71,3 +71,15 @@ def refract(dx, dy, dz, nx, ny, nz, n1, n2):
     cosine = -dot(dx, dy, dz, nx, ny, nz)
     along = ratio * cosine - sqrt(1.0 - ratio * ratio * (1.0 - cosine * cosine))
     return normalised(ratio * dx + along * nx, ratio * dy + along * ny, ratio * dz + along * nz)
+
+
+@kernel
+def put(array, row, vector):
+    """array[row] = vector, for (n, 3) arrays."""
+    array[row, 0], array[row, 1], array[row, 2] = vector
+
+
+@kernel
+def take(array, row):
+    """array[row] as three floats, for (n, 3) arrays."""
+    return array[row, 0], array[row, 1], array[row, 2]

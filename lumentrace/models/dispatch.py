@@ -7,8 +7,7 @@ function made from text, but caches its callers with it inside.
 
 import inspect
 
-import numba
-
+from lumentrace.jit import uncached_kernel
 from lumentrace.models.registry import DETECTORS, LOBES, MEDIA, PATTERNS, STARTS
 
 
@@ -25,7 +24,7 @@ def ladder_text(models, function: str) -> str:
 def _ladder(models, function: str):
     namespace = {f"model_{i}": getattr(model, function) for i, model in enumerate(models)}
     exec(ladder_text(models, function), namespace)
-    return numba.njit(nogil=True, error_model="numpy")(namespace[function])
+    return uncached_kernel(namespace[function])
 
 
 lobe_sample = _ladder(LOBES, "sample")

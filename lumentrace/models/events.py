@@ -5,3 +5,5 @@ The order is stored in files: only append. An event is also the lobe that what-i
 
 EVENTS = ("through", "reflect", "total", "mirror", "scatter", "scatter_through", "bulk")
 THROUGH, REFLECT, TOTAL, MIRROR, SCATTER, SCATTER_THROUGH, BULK = range(len(EVENTS))
+
+ARRIVED = -1  # a medium let the ray through to the end of its segment

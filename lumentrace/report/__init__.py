@@ -1,0 +1,1 @@
+"""Runs and worlds as text tables and as JSON objects: pure functions that trace nothing."""

@@ -24,12 +24,15 @@ class Mesh(NamedTuple):
     corner: np.ndarray  # (F, 3) int32, counter-clockwise seen from outside (or a sheet's front)
     normal: np.ndarray  # (F, 3) float64 unit outward normal; zeros: no area, never hit
     error: np.ndarray  # (F,) float64 bound on the distance of a computed hit from the true plane
+    margin: np.ndarray  # (F,) float64 weight of a corner below which a hit is drawn back into its
+    #   triangle: min(0.25, 64 * 32 * 2**-52 * M / smallest altitude), M the scene's largest coordinate
     body: np.ndarray  # (F,) int32
     tag: np.ndarray  # (F,) int32 row of Tags
-    pair_first: np.ndarray  # (F + 1,) int32 faces of other bodies in contact with this one
-    pair_face: np.ndarray  # (P,) int32; both directions are listed
+    pair_first: np.ndarray  # (F + D + 1,) int32 primitives in contact with this one: faces of other
+    #   bodies, and detectors that lie on a face; primitive F + d is detector d
+    pair_prim: np.ndarray  # (P,) int32; both directions are listed
     pair_gap: np.ndarray  # (P,) float64 largest distance between the two planes there
-    pair_kind: np.ndarray  # (P,) int32 DRY or OPTICAL
+    pair_kind: np.ndarray  # (P,) int32 DRY or OPTICAL (also where a detector is one of the two)
 
 
 class Tree(NamedTuple):
@@ -37,7 +40,9 @@ class Tree(NamedTuple):
 
     lower: np.ndarray  # (N, 3) float64
     upper: np.ndarray  # (N, 3) float64
-    child: np.ndarray  # (N,) int32 inner: left child, the right one follows it; leaf: offset in order
+    child: (
+        np.ndarray
+    )  # (N,) int32 inner: left child, the right one follows it; leaf: offset in order
     count: np.ndarray  # (N,) int32 primitives of a leaf; 0: inner node
     order: np.ndarray  # (F + D,) int32
 

@@ -74,9 +74,7 @@ def well(skin: Skin, material: str, x: float, radius: tuple[float, float]) -> li
 def plate_with_mouth(skin: Skin, material: str, x: tuple[float, float], mouth: list[int]) -> None:
     """The top from x[0] to x[1] around a mouth: a fan from each corner to a quarter of the ring."""
     y, quarter = HOUSING_WIDTH / 2, WELL_SIDES // 4
-    corner = [
-        skin.corner(px, py, 0.0) for px, py in ((x[1], y), (x[0], y), (x[0], -y), (x[1], -y))
-    ]
+    corner = [skin.corner(px, py, 0.0) for px, py in ((x[1], y), (x[0], y), (x[0], -y), (x[1], -y))]
     for k in range(4):
         start, end = k * quarter, (k + 1) * quarter
         for i in range(start, end):

@@ -3,9 +3,10 @@
 W. H. Beer and J. H. Lambert; Born and Wolf, Principles of Optics, section 14.1.
 """
 
-from math import exp, inf
+from math import exp
 
 from lumentrace.jit import kernel
+from lumentrace.models.events import ARRIVED
 
 name = "uniform"
 
@@ -28,11 +29,15 @@ def transmittance(absorption, length):
 def advance(values, wavelength, origin, direction, t_max, uniforms):
     """The segment inside the medium: straight, all the way.
 
-    Returns (t, direction, weight factor, optical length, group length, event): how far it went,
-    the direction there, what the weight is multiplied by, and the lengths relative to air; event
-    is -1, since nothing happens on the way. One index for all wavelengths: the group index is
-    the phase index.
+    Returns (position, direction, weight factor, optical length, group length, event): where the
+    ray is then, its direction there, what the weight is multiplied by, and the lengths relative to
+    air; the event is ARRIVED. One index for all wavelengths: the group index is the phase index.
+    With t_max inf the ray leaves for good, and only the weight factor has a meaning.
     """
-    factor = transmittance(values[1], t_max)
-    length = values[0] * t_max if t_max < inf else 0.0
-    return t_max, direction, factor, length, length, -1
+    position = (
+        origin[0] + t_max * direction[0],
+        origin[1] + t_max * direction[1],
+        origin[2] + t_max * direction[2],
+    )
+    length = values[0] * t_max
+    return position, direction, transmittance(values[1], t_max), length, length, ARRIVED

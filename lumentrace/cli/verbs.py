@@ -1,0 +1,148 @@
+"""The verbs: each reads its words, asks `lumentrace.study`, shows what `lumentrace.report` says.
+
+Everything but click is imported inside the verbs, so that `--help` of any verb is quick.
+"""
+
+import click
+
+import lumentrace as package
+from lumentrace.cli.screen import progress, remark, show, show_json
+from lumentrace.cli.words import (
+    detector_option,
+    json_option,
+    scene,
+    top_option,
+    tracing_options,
+)
+from lumentrace.errors import nearest
+
+
+class Verbs(click.Group):
+    """A group that names the nearest verb where one is unknown."""
+
+    def resolve_command(self, ctx, args):
+        if args and not args[0].startswith("-") and args[0] not in self.commands:
+            known = nearest(args[0], self.commands)
+            raise click.UsageError(f'"{args[0]}" is not a verb; {known}', ctx)
+        return super().resolve_command(ctx, args)
+
+    def list_commands(self, ctx) -> list[str]:
+        return list(self.commands)  # in the order of work, not of the alphabet
+
+
+@click.group(
+    cls=Verbs,
+    no_args_is_help=False,
+    invoke_without_command=True,
+    context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 80},
+    epilog="Example: lumentrace check scenes/bench_lamp/bench_lamp.toml",
+)
+@click.version_option(package.__version__, prog_name="lumentrace", message="%(prog)s %(version)s")
+@click.pass_context
+def lumentrace(context):
+    """Trace light through parts given as meshes: how much lands where, by which
+    paths, with a standard error on every number."""
+    if context.invoked_subcommand is None:
+        show(context.get_help())
+
+
+@lumentrace.command(
+    short_help="Say what a scene holds, and what is wrong or doubtful.",
+    epilog="Example: lumentrace check scenes/bench_lamp/bench_lamp.toml",
+)
+@scene()
+@json_option()
+def check(subject, as_json):
+    """Say what a scene holds and what is wrong or doubtful in it; trace nothing."""
+    with progress() as bar:
+        bar.stage("Reading the scene and its meshes")
+        from lumentrace import study
+        from lumentrace.report.check import check_json, check_text
+
+        world = study.build(study.load(subject))
+    if as_json:
+        show_json(check_json(world))
+    else:
+        show(check_text(world))
+
+
+@lumentrace.command(
+    short_help="Trace a scene, print measures and account, write the run.",
+    epilog="Example: lumentrace trace scenes/bench_lamp/bench_lamp.toml --rays 2e6",
+)
+@scene()
+@tracing_options
+@json_option()
+def trace(subject, rays, seed, threads, out, as_json):
+    """Trace a scene, print its measures and where the light went, write the run."""
+    with progress() as bar:
+        bar.stage("Reading the scene and its meshes")
+        from time import perf_counter
+
+        from lumentrace import study
+        from lumentrace.report.trace import trace_json, trace_text
+
+        scene = study.load(subject, seed=seed)
+        folder = study.run_folder(scene, out)
+        if not study.is_compiled():
+            bar.stage("Compiling")
+            remark("Compiling the tracer for this machine, once: about 20 s.")
+        world = study.build(scene)
+        bar.stage("Tracing")
+        started = perf_counter()
+        run = study.trace(world, rays=rays, threads=threads, progress=bar.rays)
+        seconds = perf_counter() - started
+        path = study.save(run, folder)
+    if as_json:
+        show_json(trace_json(run, path, world))
+    else:
+        show(trace_text(run, path, world, asked=rays, seconds=seconds))
+
+
+def _find(subject):
+    """The run that SCENE|RUN means; says on standard error if its scene has changed since."""
+    from lumentrace import study
+
+    found = study.find_run(subject)
+    changed = study.changed_since(found.run, found.scene) if found.scene else []
+    if changed:
+        remark(
+            f"{found.path}: {', '.join(changed)} changed since this run; "
+            f"type: lumentrace trace {study.quoted(subject)}"
+        )
+    return found
+
+
+@lumentrace.command(
+    short_help="Print the paths to each detector, strongest first.",
+    epilog="Example: lumentrace ledger scenes/range_finder/range_finder.toml --top 5",
+)
+@scene("SCENE|RUN")
+@detector_option()
+@top_option("Paths to print for each detector; 10 where left out, with --json all.")
+@json_option()
+def ledger(subject, detector, top, as_json):
+    """Print the paths by which light reached each detector, strongest first.
+
+    Takes the newest run of a scene, or a run's file."""
+    from lumentrace.report.ledger import ledger_json, ledger_text
+
+    found = _find(subject)
+    if as_json:
+        show_json(ledger_json(found.run, found.path, detector, top))
+    else:
+        show(ledger_text(found.run, found.path, detector, top))
+
+
+@lumentrace.command(
+    short_help="Print the JSON Schema of scene files.",
+    epilog="Example: lumentrace schema > scene.schema.json",
+)
+@json_option()
+def schema(as_json):
+    """Print the JSON Schema of scene files, for editors that check TOML.
+
+    It is JSON with --json and without."""
+    from lumentrace import study
+
+    show_json(study.schema())

@@ -1,0 +1,121 @@
+"""The start of a ray: its source, place, direction, and what it is inside."""
+
+from lumentrace.engine.inside import toggled
+from lumentrace.engine.query import Leaving, cosine_of, find_pair, hit_set
+from lumentrace.jit import kernel
+from lumentrace.kernels import rng
+from lumentrace.kernels.vectors import frame, put, take, to_scene
+from lumentrace.models.dispatch import pattern_emit, start_of
+from lumentrace.world.arrays import BLOCK_RAYS, DRY, TRANSPARENT
+
+
+@kernel
+def source_of(sources, place):
+    """Source of the ray at that place of a block."""
+    s = 0
+    while sources.ray_first[s + 1] <= place:
+        s += 1
+    return s
+
+
+@kernel
+def start(world, ray, ray_number, hits):
+    """Set branch 0 of the ray to the start of ray `ray_number` of the run.
+
+    Returns False where the ray starts inside more bodies than the engine holds.
+    """
+    sources = world.sources
+    block, place = ray_number // BLOCK_RAYS, ray_number % BLOCK_RAYS
+    s = source_of(sources, place)
+    first, last = sources.ray_first[s], sources.ray_first[s + 1]
+    number = block * (last - first) + place - first
+    seed, key = world.settings.seed, sources.key[s]
+    where = rng.uniforms(seed, key, number, 0, 0, rng.PLACE)
+    origin, normal, face = start_of(sources.start[s], world.mesh, sources, s, where)
+    whither = rng.uniforms(seed, key, number, 0, 0, rng.DIRECTION)
+    local = pattern_emit(
+        sources.pattern[s], sources.pattern_values[s], whither[0], whither[1]
+    )
+    tangent, bitangent = frame(normal[0], normal[1], normal[2])
+    begin(ray, origin, to_scene(local, tangent, bitangent, normal[0], normal[1], normal[2]), face)
+    ray.source[0] = s
+    ray.number[0] = number
+    ray.wavelength[0] = sources.wavelength[s]
+    ray.weight[0] = sources.ray_flux[s]
+    return not sources.immersed[s] or find_inside(world, ray, hits)
+
+
+@kernel
+def begin(ray, origin, direction, face):
+    """Set branch 0 to a fresh ray in the surroundings; face: what emits it, -1: nothing."""
+    put(ray.origin, 0, origin)
+    put(ray.direction, 0, direction)
+    ray.optical[0] = 0.0
+    ray.group[0] = 0.0
+    ray.events[0] = 0
+    ray.n_inside[0] = 0
+    ray.face[0] = face
+    ray.side[0] = 1.0
+    ray.fresh[0] = face >= 0
+    ray.n_skipped[0] = 0
+    ray.clear[0] = -1
+    ray.cover[0] = -1
+    ray.n_steps[0] = 0
+    ray.reflections[0] = 0
+    ray.scatters[0] = 0
+    for i in range(ray.n_met[0]):
+        ray.repeats[0, ray.met[0, i]] = 0
+    ray.n_met[0] = 0
+
+
+@kernel
+def find_inside(world, ray, hits):
+    """Fill in which transparent bodies the start lies in, by what a line from there leaves.
+
+    A body that the line crosses an odd number of times holds the start. The line is the ray's own
+    direction, which no mesh is aligned with. Returns False where there are too many.
+    """
+    mesh, bodies = world.mesh, world.bodies
+    direction = take(ray.direction, 0)
+    origin = take(ray.origin, 0)
+    leaving = Leaving(ray.face[0], 1.0, ray.fresh[0])
+    n_inside, n_skipped = 0, 0
+    while True:
+        count = hit_set(
+            mesh, world.tree, world.detectors, origin, direction, leaving,
+            ray.skipped[0], n_skipped, hits,
+        )  # fmt: skip
+        if count < 0:
+            return False
+        if count == 0:
+            break
+        n_skipped = 0
+        for i in range(count):
+            ray.skipped[0, n_skipped] = hits.prim[i]
+            n_skipped += 1
+            body = hits.owner[i]
+            if body < 0 or bodies.kind[body] != TRANSPARENT:
+                continue
+            n_inside = toggled(ray.inside[0], n_inside, body)
+            if n_inside < 0:
+                return False
+        t = hits.t[0]
+        origin = (
+            origin[0] + t * direction[0],
+            origin[1] + t * direction[1],
+            origin[2] + t * direction[2],
+        )
+        leaving = Leaving(leaving.face, leaving.side, False)
+    ray.n_inside[0] = n_inside
+    return True
+
+
+@kernel
+def starts_in_gap(world, ray, hits):
+    """Whether the nearest hit of a fresh ray is a clear face that its own face lies dry on."""
+    row = find_pair(world.mesh, ray.face[0], hits.prim[0])
+    if row < 0 or world.mesh.pair_kind[row] != DRY or hits.owner[0] < 0:
+        return False
+    direction = take(ray.direction, 0)
+    cosine = abs(cosine_of(world.mesh, world.detectors, hits.prim[0], direction))
+    return hits.t[0] <= hits.reach[0] + world.mesh.pair_gap[row] / cosine

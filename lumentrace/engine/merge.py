@@ -1,0 +1,292 @@
+"""Adding the lists of one block to the sums of the run, block after block, on one thread.
+
+The order of all additions is the order of blocks, and within a block that of its rays: the same
+bits for any number of threads.
+"""
+
+from typing import NamedTuple
+
+import numpy as np
+
+from lumentrace.engine.state import ARRIVALS
+from lumentrace.engine.sums import KEPT_RAYS, LOST_KEPT, REPEATS_MAX, STEPS_MAX
+from lumentrace.jit import allocating_kernel, kernel
+from lumentrace.kernels.vectors import put, take
+from lumentrace.models.events import BULK, EVENTS, THROUGH
+from lumentrace.world.arrays import BATCHES
+
+N_EVENTS = len(EVENTS)
+_FNV_OFFSET = np.uint64(0xCBF29CE484222325)
+_FNV_PRIME = np.uint64(0x100000001B3)
+
+
+class Ledger(NamedTuple):
+    """Rows of the paths met so far, and an open table of their hashes; see sums.PathSums."""
+
+    slot: np.ndarray  # (power of two,) int32 row + 1 of a hash, 0: free
+    rows: np.ndarray  # (1,) int64 rows in use
+    hash: np.ndarray
+    detector: np.ndarray
+    source: np.ndarray
+    n_steps: np.ndarray
+    step: np.ndarray
+    run_sum: np.ndarray
+    batch: np.ndarray
+    square: np.ndarray
+    count: np.ndarray
+    optical: np.ndarray
+    group: np.ndarray
+    reflections: np.ndarray
+    scatters: np.ndarray
+    ray: np.ndarray
+    other: np.ndarray
+    other_count: np.ndarray
+
+
+class Totals(NamedTuple):
+    """The sums of the run as plain arrays; see sums.Sums."""
+
+    account: np.ndarray
+    account_square: np.ndarray
+    flux: np.ndarray
+    flux_square: np.ndarray
+    flux_count: np.ndarray
+    flux_most: np.ndarray
+    cell_most: np.ndarray
+    cell_batch: np.ndarray  # without cells where batches are not kept
+    cell_half: np.ndarray
+    cell_block_square: np.ndarray  # without cells where batches are kept
+    cell_square: np.ndarray
+    cell_block: np.ndarray  # (G, C) float64 of this block, where batches are not kept
+    what_if: np.ndarray
+    lost_ray: np.ndarray
+    lost_reason: np.ndarray
+    lost_weight: np.ndarray
+    lost_place: np.ndarray
+    lost_tag: np.ndarray
+    lost_count: np.ndarray  # (1,) int64
+
+
+@kernel
+def path_hash(detector, source, steps, runs, first, last):
+    """64-bit FNV-1a digest of a path: detector, source, and each step with its run up to three.
+
+    Fowler, Noll, Vo: the FNV non-cryptographic hash algorithm (RFC 9923), by words, not bytes.
+    """
+    digest = (_FNV_OFFSET ^ np.uint64(detector)) * _FNV_PRIME
+    digest = (digest ^ np.uint64(source)) * _FNV_PRIME
+    for i in range(first, last):
+        digest = (digest ^ np.uint64(signed_step(steps[i], runs[i]))) * _FNV_PRIME
+        digest ^= digest >> np.uint64(32)
+    return digest
+
+
+@kernel
+def signed_step(step, run):
+    """A step as it stands in the signature: tag, event, and a run of one, two, or three and more."""
+    return (step << 4) | min(run, 3)
+
+
+@kernel
+def row_of(ledger, detector, source, tally, first, last):
+    """Row of a path, made if it is new and there is room; -1: neither."""
+    digest = path_hash(detector, source, tally.step, tally.run, first, last)
+    mask = np.uint64(len(ledger.slot) - 1)
+    place = digest & mask
+    while ledger.slot[place] > 0:
+        row = ledger.slot[place] - 1
+        if ledger.hash[row] == digest:
+            return row
+        place = (place + np.uint64(1)) & mask
+    row = ledger.rows[0]
+    if row == len(ledger.hash):
+        return -1
+    ledger.rows[0] += 1
+    ledger.slot[place] = row + 1
+    ledger.hash[row] = digest
+    ledger.detector[row] = detector
+    ledger.source[row] = source
+    ledger.n_steps[row] = last - first
+    for i in range(last - first):
+        ledger.step[row, i] = signed_step(tally.step[first + i], tally.run[first + i])
+    return row
+
+
+@kernel
+def add_to_path(ledger, row, tally, i, first, last, batch):
+    """Add arrival i of the block to its path."""
+    amount = tally.amount[i]
+    ledger.batch[row, batch] += amount
+    ledger.optical[row] += amount * tally.optical[i]
+    ledger.group[row] += amount * tally.group[i]
+    ledger.reflections[row] += amount * tally.reflections[i]
+    ledger.scatters[row] += amount * tally.scatters[i]
+    for k in range(first, last):
+        ledger.run_sum[row, k - first] += amount * tally.run[k]
+    n = ledger.count[row]
+    if n < KEPT_RAYS:
+        ledger.ray[row, n] = tally.ray[i]
+    ledger.count[row] = n + 1
+
+
+@kernel
+def _add_what_if(what_if, key, repeats, amount):
+    """Add an arrival to the sums of a key that was met so many times."""
+    if repeats <= REPEATS_MAX:
+        what_if[key, repeats - 1] += amount
+    else:
+        what_if[key, REPEATS_MAX] += amount
+        what_if[key, REPEATS_MAX + 1] += amount * repeats
+
+
+@kernel
+def add_what_if(what_if, tags_part, tag_repeats, part_repeats, tally, first, last, amount):
+    """Add one arrival to the what-if sums of one detector, group and batch.
+
+    tag_repeats, part_repeats: zeros, and zeros again on return.
+    """
+    n_tags = len(tag_repeats)
+    for k in range(first, last):
+        key, repeats = tally.key[k], tally.repeats[k]
+        _add_what_if(what_if, key, repeats, amount)
+        event = key % N_EVENTS
+        if event != THROUGH and event != BULK:
+            tag_repeats[key // N_EVENTS] += repeats
+            part_repeats[tags_part[key // N_EVENTS]] += repeats
+    for k in range(first, last):
+        tag = tally.key[k] // N_EVENTS
+        if tag_repeats[tag] > 0:
+            _add_what_if(what_if, n_tags * N_EVENTS + tag, tag_repeats[tag], amount)
+            tag_repeats[tag] = 0
+        part = tags_part[tag]
+        if part_repeats[part] > 0:
+            key = n_tags * (N_EVENTS + 1) + part
+            _add_what_if(what_if, key, part_repeats[part], amount)
+            part_repeats[part] = 0
+
+
+@kernel
+def _add_squares(totals, ledger, tally, path, group_of, first, last):
+    """Squares of what one ray, with arrivals [first, last) of the block, adds to each number."""
+    for i in range(first, last):
+        group = group_of[tally.source[i]]
+        d, cell = tally.detector[i], tally.cell[i]
+        at_detector = at_cell = on_path = 0.0
+        n_detector = n_cell = 0
+        first_detector = first_cell = first_path = True
+        for j in range(first, last):
+            amount = tally.amount[j]
+            if tally.detector[j] == d:
+                at_detector += amount
+                n_detector += 1
+                first_detector = first_detector and j >= i
+            if tally.cell[j] == cell:
+                at_cell += amount
+                n_cell += 1
+                first_cell = first_cell and j >= i
+            if path[j] == path[i]:
+                on_path += amount
+                first_path = first_path and j >= i
+        if first_detector:
+            totals.flux_square[d, group] += at_detector * at_detector
+            totals.flux_most[d] = max(totals.flux_most[d], n_detector)
+        if first_cell:
+            totals.cell_square[group, cell] += at_cell * at_cell
+            totals.cell_most[d] = max(totals.cell_most[d], n_cell)
+        if first_path and path[i] >= 0:
+            ledger.square[path[i]] += on_path * on_path
+
+
+@allocating_kernel
+def merge_block(block, tally, group_of, tags_part, totals, ledger, tag_repeats, part_repeats):
+    """Add a block's account and lists to the run's sums.
+
+    group_of: (S,) group of each source. tags_part: (T,) part of each tag. tag_repeats,
+    part_repeats: zeros, (T,) and (P,) int64.
+    """
+    batch = block % BATCHES
+    totals.account[:, :, batch] += tally.account
+    totals.account_square[:] += tally.square
+    keeps_batches = totals.cell_batch.shape[1] > 0
+    n = tally.used[ARRIVALS]
+    path = np.empty(n, np.int64)
+    first_step = first_key = first_of_ray = 0
+    for i in range(n):
+        d, source, cell, amount = (
+            tally.detector[i],
+            tally.source[i],
+            tally.cell[i],
+            tally.amount[i],
+        )
+        group = group_of[source]
+        totals.flux[d, group, batch] += amount
+        totals.flux_count[d, group] += 1
+        totals.cell_half[batch & 1, group, cell] += amount
+        if keeps_batches:
+            totals.cell_batch[group, cell, batch] += amount
+        else:
+            totals.cell_block[group, cell] += amount
+        last_step, last_key = tally.last_step[i], tally.last_key[i]
+        path[i] = -1
+        if not tally.too_long[i]:
+            path[i] = row_of(ledger, d, source, tally, first_step, last_step)
+        if path[i] >= 0:
+            add_to_path(ledger, path[i], tally, i, first_step, last_step, batch)
+        else:
+            ledger.other[d, group, batch] += amount
+            ledger.other_count[d, group] += 1
+        add_what_if(
+            totals.what_if[d, group, batch], tags_part, tag_repeats, part_repeats,
+            tally, first_key, last_key, amount,
+        )  # fmt: skip
+        first_step, first_key = last_step, last_key
+        if i + 1 == n or tally.ray[i + 1] != tally.ray[i]:
+            _add_squares(totals, ledger, tally, path, group_of, first_of_ray, i + 1)
+            first_of_ray = i + 1
+    if not keeps_batches:
+        for i in range(n):
+            group, cell = group_of[tally.source[i]], tally.cell[i]
+            total = totals.cell_block[group, cell]
+            totals.cell_block_square[group, cell] += total * total
+            totals.cell_block[group, cell] = 0.0
+    _merge_lost(tally, totals)
+
+
+@kernel
+def _merge_lost(tally, totals):
+    """Append the rays that the block lost, as far as there is room."""
+    for i in range(min(tally.used[3], LOST_KEPT)):
+        n = totals.lost_count[0] + i
+        if n < LOST_KEPT:
+            totals.lost_ray[n] = tally.lost_ray[i]
+            totals.lost_reason[n] = tally.lost_reason[i]
+            totals.lost_weight[n] = tally.lost_weight[i]
+            put(totals.lost_place, n, take(tally.lost_place, i))
+            totals.lost_tag[n] = tally.lost_tag[i]
+    totals.lost_count[0] += tally.used[3]
+
+
+def new_ledger(n_detectors: int, n_groups: int, paths_max: int) -> Ledger:
+    """Empty rows for at most so many paths."""
+    slots = 1 << (2 * paths_max - 1).bit_length()
+    p = paths_max
+    return Ledger(
+        slot=np.zeros(slots, np.int32),
+        rows=np.zeros(1, np.int64),
+        hash=np.zeros(p, np.uint64),
+        detector=np.zeros(p, np.int32),
+        source=np.zeros(p, np.int32),
+        n_steps=np.zeros(p, np.int32),
+        step=np.zeros((p, STEPS_MAX), np.int64),
+        run_sum=np.zeros((p, STEPS_MAX)),
+        batch=np.zeros((p, BATCHES)),
+        square=np.zeros(p),
+        count=np.zeros(p, np.int64),
+        optical=np.zeros(p),
+        group=np.zeros(p),
+        reflections=np.zeros(p),
+        scatters=np.zeros(p),
+        ray=np.full((p, KEPT_RAYS), -1, np.int64),
+        other=np.zeros((n_detectors, n_groups, BATCHES)),
+        other_count=np.zeros((n_detectors, n_groups), np.int64),
+    )

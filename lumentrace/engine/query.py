@@ -1,0 +1,263 @@
+"""What a ray hits: one traversal for the closest hit, any hit, and all hits of one event.
+
+Primitives are numbered through: faces first, then detectors. A hit holds the primitive, the
+distance along the ray, its place on the primitive, the side, and its reach: the bound on the error
+of the distance, which is the primitive's bound on its plane over |cosine|.
+"""
+
+from math import inf
+from typing import NamedTuple
+
+import numpy as np
+
+from lumentrace.jit import kernel
+from lumentrace.kernels.hierarchy import STACK_DEPTH, enters_box
+from lumentrace.kernels.triangle import intersect, shear
+from lumentrace.models.dispatch import detector_intersect
+from lumentrace.world.arrays import DRY
+
+HITS_MAX = 24  # bodies (from either side) and detectors that may meet in one place
+
+
+class Hits(NamedTuple):
+    """Scratch of one thread: the hits of one event, nearest first once `hit_set` returns."""
+
+    prim: np.ndarray  # (HITS_MAX,) int32 face, or n_faces + detector
+    owner: np.ndarray  # (HITS_MAX,) int32 body, or -1 - detector
+    front: np.ndarray  # (HITS_MAX,) bool: hit from the side of the normal
+    t: np.ndarray  # (HITS_MAX,) float64 distance
+    u: np.ndarray  # (HITS_MAX,) float64 weight of the second corner | share across
+    v: np.ndarray  # (HITS_MAX,) float64 weight of the third corner | share up
+    reach: np.ndarray  # (HITS_MAX,) float64
+    crossed: np.ndarray  # (HITS_MAX,) bool: a transparent body is entered or left here
+    node: np.ndarray  # (STACK_DEPTH,) int32 nodes still to visit
+    node_t: np.ndarray  # (STACK_DEPTH,) float64 where the ray enters them
+
+
+class Leaving(NamedTuple):
+    """What a ray starts from, and must not hit again."""
+
+    face: int  # the face that it leaves, -1: none
+    side: float  # +1 on the side of that face's normal, -1 behind it
+    fresh: bool  # it is emitted there, and may stand in a dry gap
+
+
+NOWHERE = Leaving(-1, 1.0, False)
+
+
+def new_hits() -> Hits:
+    """Empty scratch for `hit_set`."""
+    return Hits(
+        np.empty(HITS_MAX, np.int32),
+        np.empty(HITS_MAX, np.int32),
+        np.empty(HITS_MAX, np.bool_),
+        np.empty(HITS_MAX),
+        np.empty(HITS_MAX),
+        np.empty(HITS_MAX),
+        np.empty(HITS_MAX),
+        np.empty(HITS_MAX, np.bool_),
+        np.empty(STACK_DEPTH, np.int32),
+        np.empty(STACK_DEPTH),
+    )
+
+
+@kernel
+def cosine_of(mesh, detectors, prim, direction):
+    """direction . normal: negative where the ray arrives on the side of the normal."""
+    x, y, z = direction
+    n_faces = len(mesh.body)
+    if prim < n_faces:
+        normal = mesh.normal
+        return x * normal[prim, 0] + y * normal[prim, 1] + z * normal[prim, 2]
+    place, d = detectors.place, prim - n_faces
+    return x * place[d, 1, 0] + y * place[d, 1, 1] + z * place[d, 1, 2]
+
+
+@kernel
+def find_pair(mesh, prim, other):
+    """Row of the contact of two primitives, or -1 where there is none."""
+    for row in range(mesh.pair_first[prim], mesh.pair_first[prim + 1]):
+        if mesh.pair_prim[row] == other:
+            return row
+    return -1
+
+
+@kernel
+def _widest_gap(mesh, prim):
+    """Largest gap of all contacts of a primitive; zero without any."""
+    widest = 0.0
+    for row in range(mesh.pair_first[prim], mesh.pair_first[prim + 1]):
+        widest = max(widest, mesh.pair_gap[row])
+    return widest
+
+
+@kernel
+def _start(mesh, leaving, prim, t, cosine, reach):
+    """Distance at which a ray that leaves a face meets a primitive, or inf where it does not.
+
+    Ahead is ahead, but what is in contact with the face belongs to the event that is over. What
+    lies behind by no more than the error of its distance is met here if it is of the same body and
+    the ray comes to it on the side on which it left: it stands at a concave edge.
+    """
+    if leaving.face < 0:
+        return t if t > 0.0 else inf
+    row = find_pair(mesh, leaving.face, prim)
+    if row >= 0 and abs(t) <= reach + mesh.pair_gap[row] / abs(cosine):
+        return max(t, 0.0) if leaving.fresh and mesh.pair_kind[row] == DRY else inf
+    if t > 0.0:
+        return t
+    same = prim < len(mesh.body) and mesh.body[prim] == mesh.body[leaving.face]
+    return 0.0 if same and t >= -reach and cosine * leaving.side < 0.0 else inf
+
+
+@kernel
+def _meet(mesh, detectors, origin, direction, sheared, leaving, prim):
+    """The hit of one primitive: (t, u, v, cosine, reach); t is inf where there is none."""
+    cosine = cosine_of(mesh, detectors, prim, direction)
+    if cosine == 0.0:
+        return inf, 0.0, 0.0, cosine, 0.0
+    n_faces = len(mesh.body)
+    if prim < n_faces:
+        corner = mesh.corner
+        t, u, v = intersect(
+            origin, sheared, mesh.vertex, corner[prim, 0], corner[prim, 1], corner[prim, 2]
+        )
+        error = mesh.error[prim]
+    else:
+        d = prim - n_faces
+        t, u, v = detector_intersect(detectors.model[d], detectors, d, origin, direction)
+        error = detectors.error[d]
+    reach = error / abs(cosine)
+    if t < inf:
+        t = _start(mesh, leaving, prim, t, cosine, reach)
+    return t, u, v, cosine, reach
+
+
+@kernel
+def _copy(hits, source, target):
+    hits.prim[target] = hits.prim[source]
+    hits.owner[target] = hits.owner[source]
+    hits.front[target] = hits.front[source]
+    hits.t[target] = hits.t[source]
+    hits.u[target] = hits.u[source]
+    hits.v[target] = hits.v[source]
+    hits.reach[target] = hits.reach[source]
+
+
+@kernel
+def _insert(hits, count, t_far, prim, owner, front, t, u, v, reach):
+    """Keep a hit, in order of (t, primitive); returns the number kept, -1: no room.
+
+    Of the hits of one body from one side only the first stays, and none that lies beyond t_far by
+    more than its reach.
+    """
+    kept = 0
+    superseded = False
+    for i in range(count):
+        if hits.t[i] > t_far + hits.reach[i]:
+            continue
+        if hits.owner[i] == owner and hits.front[i] == front:
+            if (hits.t[i], hits.prim[i]) > (t, prim):
+                continue
+            superseded = True
+        if kept != i:
+            _copy(hits, i, kept)
+        kept += 1
+    if superseded:
+        return kept
+    if kept == HITS_MAX:
+        return -1
+    place = kept
+    while place > 0 and (hits.t[place - 1], hits.prim[place - 1]) > (t, prim):
+        _copy(hits, place - 1, place)
+        place -= 1
+    hits.prim[place] = prim
+    hits.owner[place] = owner
+    hits.front[place] = front
+    hits.t[place] = t
+    hits.u[place] = u
+    hits.v[place] = v
+    hits.reach[place] = reach
+    return kept + 1
+
+
+@kernel
+def _is_among(prim, skipped, n_skipped):
+    for i in range(n_skipped):
+        if skipped[i] == prim:
+            return True
+    return False
+
+
+@kernel
+def hit_set(mesh, tree, detectors, origin, direction, leaving, skipped, n_skipped, hits):
+    """All hits of the event that the ray comes to next, nearest first, in `hits`.
+
+    One event are the hits that lie no farther behind the nearest than their two reaches, and those
+    in contact with it by no more than the gap along the ray. skipped[:n_skipped]: primitives of the
+    event that the ray comes from. Returns their number; 0: nothing ahead; -1: more than HITS_MAX.
+    """
+    sheared = shear(direction[0], direction[1], direction[2])
+    inverse = 1.0 / direction[0], 1.0 / direction[1], 1.0 / direction[2]
+    count = 0
+    t_far = inf
+    waiting = 1
+    hits.node[0] = 0
+    hits.node_t[0] = 0.0
+    while waiting > 0:
+        waiting -= 1
+        node = hits.node[waiting]
+        if hits.node_t[waiting] > t_far:
+            continue
+        first = tree.child[node]
+        if tree.count[node] == 0:
+            left = enters_box(tree.lower, tree.upper, first, origin, inverse, t_far)
+            right = enters_box(tree.lower, tree.upper, first + 1, origin, inverse, t_far)
+            near, far = (first, first + 1) if left <= right else (first + 1, first)
+            for child, t_child in ((far, max(left, right)), (near, min(left, right))):
+                if t_child < inf:
+                    hits.node[waiting] = child
+                    hits.node_t[waiting] = t_child
+                    waiting += 1
+            continue
+        for i in range(first, first + tree.count[node]):
+            prim = tree.order[i]
+            if prim == leaving.face or _is_among(prim, skipped, n_skipped):
+                continue
+            t, u, v, cosine, reach = _meet(
+                mesh, detectors, origin, direction, sheared, leaving, prim
+            )
+            if t == inf or t > t_far + reach:
+                continue
+            if count == 0 or t < hits.t[0]:
+                t_far = t + reach + _widest_gap(mesh, prim) / abs(cosine)
+            n_faces = len(mesh.body)
+            owner = mesh.body[prim] if prim < n_faces else n_faces - prim - 1
+            count = _insert(hits, count, t_far, prim, owner, cosine < 0.0, t, u, v, reach)
+            if count < 0:
+                return -1
+    return _one_event(mesh, detectors, direction, hits, count)
+
+
+@kernel
+def _one_event(mesh, detectors, direction, hits, count):
+    """Keep the hits that belong to the event of the nearest; returns their number."""
+    kept = min(count, 1)
+    for i in range(1, count):
+        behind = hits.t[i] - hits.t[0] - hits.reach[0] - hits.reach[i]
+        if behind > 0.0:
+            row = find_pair(mesh, hits.prim[0], hits.prim[i])
+            cosine = abs(cosine_of(mesh, detectors, hits.prim[0], direction))
+            if row < 0 or behind > mesh.pair_gap[row] / cosine:
+                continue
+        _copy(hits, i, kept)
+        kept += 1
+    return kept
+
+
+@kernel
+def closest_hit(mesh, tree, detectors, origin, direction, hits):
+    """The nearest primitive ahead and its distance; (-1, inf) where there is none."""
+    if hit_set(mesh, tree, detectors, origin, direction, NOWHERE, hits.prim, 0, hits) == 0:
+        return -1, inf
+    return hits.prim[0], hits.t[0]

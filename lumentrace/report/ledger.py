@@ -1,0 +1,109 @@
+"""What `ledger` says of a run: the paths to each detector, strongest first."""
+
+from pathlib import Path
+
+from lumentrace.analysis.ledger import PathRow, paths
+from lumentrace.analysis.samples import FEW
+from lumentrace.report.lines import CAUTION, head, plural
+from lumentrace.report.table import WIDTH, lay_out
+from lumentrace.report.trace import shown_path
+from lumentrace.run.run import Run
+from lumentrace.units import format_with_error, grouped
+
+TOP = 10
+_INDENT = 5
+_FEW = f"few: fewer than {FEW:.0f} effective contributions, so that the error is rough."
+
+
+def ledger_json(run: Run, path: Path, detector: str | None, top: int | None) -> dict:
+    """All paths, or the `top` strongest to each detector. UserError for an unknown detector."""
+    return {
+        "scene": run.data.attrs["scene"],
+        "file": str(path),
+        "rays": run.rays,
+        "seed": run.seed,
+        "paths": [
+            {
+                "detector": row.detector,
+                "source": row.source,
+                "path": None if row.source is None else [list(step) for step in row.steps],
+                "flux": row.flux,
+                "error": row.error,
+                "unit": row.unit,
+                "share": row.share,
+                "share_error": row.share_error,
+                "upper": row.upper,
+                "count": row.count,
+                "effective": row.effective,
+            }
+            for name in _wanted(run, detector)
+            for row in paths(run, name)[:top]
+        ],
+    }
+
+
+def ledger_text(run: Run, path: Path, detector: str | None, top: int | None) -> str:
+    """The `top` strongest paths to each detector, each on lines of its own, 80 columns wide."""
+    opening = [
+        *head(run.data.attrs["scene"], run.title),
+        f"{shown_path(path)}: {grouped(run.rays)} rays, seed {run.seed}.",
+    ]
+    blocks = [opening]
+    blocks += [_detector(run, name, top or TOP) for name in _wanted(run, detector)]
+    few = any(line.endswith("few") for block in blocks for line in block)
+    blocks.append([_FEW, CAUTION] if few else [CAUTION])
+    return "\n\n".join("\n".join(block) for block in blocks) + "\n"
+
+
+def _wanted(run: Run, detector: str | None) -> tuple[str, ...]:
+    if detector is None:
+        return run.detectors
+    run.detector(detector)  # refuses an unknown one
+    return (detector,)
+
+
+def _detector(run: Run, name: str, top: int) -> list[str]:
+    rows = paths(run, name)
+    if not rows:
+        return [f"{name}: no light arrived."]
+    shown = rows[:top]
+    share = sum(row.share or 0.0 for row in shown)
+    unit = shown[0].unit
+    found = f"{name}: {plural(len(rows), 'path')}"
+    if len(shown) < len(rows):
+        found += f"; the strongest {len(shown)} bring {100 * share:.3g} % of its light"
+    header = ["#", f"flux {unit}", "error", "share %", "error", "arrivals", ""]
+    table = lay_out([header, *(_cells(i, row) for i, row in enumerate(shown, 1))], ">>>>>><")
+    lines = [f"{found}.", table[0]]
+    for numbers, row in zip(table[1:], shown, strict=True):
+        lines += [numbers, *_steps(row)]
+    return lines
+
+
+def _cells(number: int, row: PathRow) -> list[str]:
+    share, share_error = "", ""
+    if row.share is not None:
+        error = None if row.share_error is None else 100.0 * row.share_error
+        share, share_error = format_with_error(100.0 * row.share, error)
+    few = row.effective is not None and row.effective < FEW
+    return [
+        str(number),
+        *format_with_error(row.flux, row.error),
+        share,
+        share_error,
+        grouped(row.count),
+        "few" if few else "",
+    ]
+
+
+def _steps(row: PathRow) -> list[str]:
+    """The path, broken between steps."""
+    lines, line = [], ""
+    for step in row.text.split(", "):
+        longer = f"{line}, {step}" if line else step
+        if line and len(longer) + 1 > WIDTH - _INDENT:
+            lines.append(f"{line},")
+            line = step
+        else:
+            line = longer
+    return [" " * _INDENT + part for part in (*lines, line)]

@@ -1,0 +1,41 @@
+"""Aligned columns of plain text, at most so wide."""
+
+import textwrap
+from collections.abc import Sequence
+
+WIDTH = 80
+GAP = 2
+
+
+def lay_out(
+    rows: Sequence[Sequence[str]], align: str, elastic: int = 0, width: int = WIDTH
+) -> list[str]:
+    """Lines of a table: each column as wide as its widest cell, two spaces between columns.
+
+    rows: cells, all rows of equal length; the header, if any, is the first. align: "<" or ">" for
+    each column. elastic: the column that is wrapped, with its further lines indented by two, when
+    a line would be longer than `width`; it keeps at least 12 characters.
+    """
+    if not rows:
+        return []
+    widths = [max(len(row[i]) for row in rows) for i in range(len(align))]
+    spare = width - (sum(widths) - widths[elastic] + GAP * (len(align) - 1))
+    widths[elastic] = min(widths[elastic], max(12, spare))
+    lines = []
+    for row in rows:
+        first, *rest = wrap(row[elastic], widths[elastic])
+        lines.append(_line(row, first, align, widths, elastic))
+        blank = [""] * len(row)
+        lines.extend(_line(blank, more, align, widths, elastic) for more in rest)
+    return lines
+
+
+def wrap(text: str, width: int) -> list[str]:
+    """Break at spaces, and inside a word only where it must; further lines are indented by two."""
+    return textwrap.wrap(text, width, subsequent_indent="  ", break_on_hyphens=False) or [""]
+
+
+def _line(row, wrapped: str, align: str, widths: list[int], elastic: int) -> str:
+    cells = [wrapped if i == elastic else cell for i, cell in enumerate(row)]
+    padded = [f"{c:{a}{w}}" for c, a, w in zip(cells, align, widths, strict=True)]
+    return (" " * GAP).join(padded).rstrip()

@@ -1,0 +1,82 @@
+"""What `trace` says when it is done."""
+
+import os
+import shlex
+from pathlib import Path
+
+from lumentrace.analysis.account import account
+from lumentrace.analysis.measures import Measure, measures
+from lumentrace.report.account import account_json, account_lines, lost_json, lost_lines
+from lumentrace.report.lines import CAUTION, head, notice_lines, notices_json
+from lumentrace.report.measures import limits_json, measure_lines, measures_json
+from lumentrace.report.table import WIDTH, wrap
+from lumentrace.run.run import Run
+from lumentrace.units import grouped
+from lumentrace.world.world import World
+
+
+def trace_json(run: Run, path: Path, world: World) -> dict:
+    """Measures, account, limits and what made them, as one object; flux in W in the account."""
+    found = measures(run)
+    return {
+        "scene": run.data.attrs["scene"],
+        "file": str(path),
+        "rays": run.rays,
+        "seed": run.seed,
+        "measures": measures_json(found),
+        "limits": limits_json(found, run.limits),
+        "account": account_json(account(run)),
+        "lost": lost_json(run),
+        "notices": notices_json(world.notices),
+    }
+
+
+def trace_text(run: Run, path: Path, world: World, asked: int | None, seconds: float) -> str:
+    """The same for people, at most 80 columns wide."""
+    found = measures(run)
+    detectors = {name: run.detector(name) for name in run.detectors}
+    single = {n for n, node in detectors.items() if node["value"].size == 1}
+    in_lumens = any(node.attrs["counts"] == "illuminance" for node in detectors.values())
+    blocks = (
+        [*head(run.data.attrs["scene"], run.title), *_traced(run, world, found, asked, seconds)],
+        measure_lines(found, run.limits, single),
+        account_lines(account(run), in_lumens),
+        lost_lines(run),
+        notice_lines(n for n in world.notices if n.kind == "doubtful"),
+        [
+            CAUTION,
+            f"Written: {shown_path(path)}",
+            f"Paths:   lumentrace ledger {shlex.quote(shown_path(path))}",
+        ],
+    )
+    return "\n\n".join("\n".join(block) for block in blocks if block) + "\n"
+
+
+def _traced(run: Run, world: World, found: dict[str, Measure], asked, seconds) -> list[str]:
+    """How many rays, how long, and what ended it."""
+    sentences = [f"{grouped(run.rays)} rays in {_duration(seconds)}, seed {run.seed}."]
+    until = world.scene.trace.until
+    wanted = asked or world.scene.trace.rays
+    if until is not None:
+        measure = found[until.measure]
+        goal = f"{100 * until.relative_error:g} %"
+        if measure.error is None or not measure.value:
+            sentences.append(f"Not known within {goal}: {until.measure}, which no light reached.")
+        elif measure.error <= until.relative_error * abs(measure.value):
+            sentences.append(f"Stopped: {until.measure} known within {goal}.")
+        else:
+            known = f"{100 * measure.error / abs(measure.value):.2g} %"
+            sentences.append(f"Not within {goal}: {until.measure} is known within {known}.")
+    elif wanted != run.rays:
+        sentences.append(f"Rounded up from {grouped(wanted)} to whole rounds of 65 536.")
+    return wrap(" ".join(sentences), WIDTH)
+
+
+def _duration(seconds: float) -> str:
+    return f"{seconds:.1f} s" if seconds < 10 else f"{seconds:.0f} s"
+
+
+def shown_path(path: Path) -> str:
+    """Relative to the working folder where it lies inside it."""
+    relative = os.path.relpath(path)
+    return str(path) if relative.startswith(os.pardir) else relative
