@@ -16,6 +16,9 @@ from typing import TYPE_CHECKING
 from lumentrace.errors import UserError
 
 if TYPE_CHECKING:
+    from lumentrace.analysis.account import Account
+    from lumentrace.analysis.ledger import PathRow
+    from lumentrace.analysis.measures import Measure
     from lumentrace.engine.sums import Sums
     from lumentrace.run.run import Run
     from lumentrace.scene.model import Scene
@@ -89,11 +92,25 @@ def save(run: "Run", folder: str | os.PathLike) -> Path:
     return path
 
 
-def measures(run: "Run") -> dict:
+def measures(run: "Run") -> "dict[str, Measure]":
     """All measures of a run by name, each with value, error and unit."""
-    from lumentrace.analysis.measures import measures as measures_of
+    from lumentrace.analysis.measures import measures as of
 
-    return measures_of(run)
+    return of(run)
+
+
+def account(run: "Run") -> "Account":
+    """Where all emitted flux went; it closes."""
+    from lumentrace.analysis.account import account as of
+
+    return of(run)
+
+
+def paths(run: "Run", detector: str | None = None) -> "list[PathRow]":
+    """The paths to one detector or to all, strongest first. UserError for an unknown one."""
+    from lumentrace.analysis.ledger import paths as of
+
+    return of(run, detector)
 
 
 def planned_rays(scene: "Scene", rays: int | None) -> int:
@@ -132,11 +149,6 @@ def run_folder(scene: "Scene", out: str | os.PathLike | None) -> Path:
     return folder
 
 
-def quoted(path: str | os.PathLike) -> str:
-    """A path as one can type it into a shell."""
-    return shlex.quote(str(path))
-
-
 def run_name(run: "Run") -> str:
     """STEM-XXXX.nc: the scene file's stem, and a digest of all that made the run."""
     facts = run.data.attrs
@@ -155,7 +167,7 @@ def newest_run(scene_path: Path) -> Path:
     runs = [p for p in folder.glob(f"*{RUN_SUFFIX}") if named.fullmatch(p.name)]
     if not runs:
         raise UserError(
-            f"{scene_path}: has no run yet; type: lumentrace trace {quoted(scene_path)}"
+            f"{scene_path}: has no run yet; type: lumentrace trace {shlex.quote(str(scene_path))}"
         )
     return max(runs, key=lambda p: (p.stat().st_mtime_ns, p.name))
 
@@ -206,7 +218,7 @@ def world_of(found: FoundRun) -> "World":
     if changed:
         raise UserError(
             f"{found.path}: {', '.join(changed)} changed since this run; "
-            f"type: lumentrace trace {quoted(path)}"
+            f"type: lumentrace trace {shlex.quote(str(path))}"
         )
     return build(scene)
 
@@ -239,9 +251,8 @@ def _file_digest(path: Path) -> str | None:
 
 def _known(world: "World", sums: "Sums") -> bool:
     """Whether the measure of `until` has reached the error asked for."""
-    from lumentrace.analysis.measures import measures as measures_of
     from lumentrace.run.make import make_run
 
     until = world.scene.trace.until
-    found = measures_of(make_run(world, sums))[until.measure]
+    found = measures(make_run(world, sums))[until.measure]
     return found.error is not None and found.error <= until.relative_error * abs(found.value)

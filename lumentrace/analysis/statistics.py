@@ -11,6 +11,8 @@ from math import log, sqrt
 import numpy as np
 from scipy.special import gammainccinv, gammaincinv, stdtrit
 
+ROUNDING = 1e-12  # relative spread of batches below which they are the same number
+
 
 def jackknife(function: Callable[..., np.ndarray], *batches: np.ndarray) -> np.ndarray:
     """Standard error of function(mean of each of batches), for smooth functions only.
@@ -36,16 +38,18 @@ def odd(batch: np.ndarray) -> np.ndarray:
 
 def skewness_of_mean(batch: np.ndarray) -> np.ndarray:
     """Estimated skewness of the mean of n batches, m3 / (m2^(3/2) sqrt(n)) with the moments
-    m_k = sum (x - mean)^k / n and m2 with n - 1, as Johnson (1978) has them; 0 without spread.
+    m_k = sum (x - mean)^k / n and m2 with n - 1, as Johnson (1978) has them; 0 without spread, or
+    with one that is only rounding.
 
     batch: (..., n) float. Returns (...).
     """
     n = batch.shape[-1]
-    spread = batch - batch.mean(axis=-1, keepdims=True)
+    mean = batch.mean(axis=-1)
+    spread = batch - mean[..., None]
     deviation = np.sqrt((spread**2).sum(axis=-1) / (n - 1))
     third = (spread**3).sum(axis=-1) / n
-    scale = deviation**3 * sqrt(n)
-    return np.divide(third, scale, out=np.zeros_like(third), where=scale > 0.0)
+    real = deviation > ROUNDING * np.abs(mean)
+    return np.divide(third, deviation**3 * sqrt(n), out=np.zeros_like(third), where=real)
 
 
 def t_bounds(value, error, freedom: int, alpha: float, skew=0.0) -> tuple[np.ndarray, np.ndarray]:

@@ -107,8 +107,7 @@ def _find(subject):
     changed = study.changed_since(found.run, found.scene) if found.scene else []
     if changed:
         remark(
-            f"{found.path}: {', '.join(changed)} changed since this run; "
-            f"type: lumentrace trace {study.quoted(subject)}"
+            f"{found.path}: {', '.join(changed)} changed since this run; trace again for today's"
         )
     return found
 
@@ -132,6 +131,36 @@ def ledger(subject, detector, top, as_json):
         show_json(ledger_json(found.run, found.path, detector, top))
     else:
         show(ledger_text(found.run, found.path, detector, top))
+
+
+@lumentrace.command(
+    short_help="Draw a run: parts, strongest paths, detector maps.",
+    epilog="Example: lumentrace draw scenes/range_finder/range_finder.toml --detector rx",
+)
+@scene("SCENE|RUN")
+@detector_option()
+@top_option("Paths to draw, strongest first; 6 where left out.")
+@json_option()
+def draw(subject, detector, top, as_json):
+    """Draw pictures of a run beside it: the parts with the strongest paths to a detector, and the
+    detector's map, as PNG files.
+
+    Takes the newest run of a scene, or a run's file. Needs the extra `pictures`."""
+    from lumentrace import study
+    from lumentrace.report.lines import shown_path
+
+    with progress() as bar:
+        bar.stage("Reading the run and its scene")
+        found = study.find_run(subject)
+        world = study.world_of(found)
+        bar.stage("Drawing")
+        from lumentrace_viz.draw import draw_run
+
+        files = draw_run(found.run, world, found.path.parent, detector=detector, paths=top)
+    if as_json:
+        show_json({"file": str(found.path), "pictures": [str(file) for file in files]})
+    else:
+        show("\n".join(f"Written: {shown_path(file)}" for file in files))
 
 
 @lumentrace.command(

@@ -1,7 +1,7 @@
 """The start of a ray: its source, place, direction, and what it is inside."""
 
 from lumentrace.engine.inside import toggled
-from lumentrace.engine.query import Leaving, cosine_of, find_pair, hit_set
+from lumentrace.engine.query import Leaving, cosine_of, find_pair, hit_set, point_of
 from lumentrace.jit import kernel
 from lumentrace.kernels import rng
 from lumentrace.kernels.vectors import frame, put, take, to_scene
@@ -89,23 +89,30 @@ def find_inside(world, ray, hits):
             return False
         if count == 0:
             break
-        n_skipped = 0
+        face = -1
         for i in range(count):
-            ray.skipped[0, n_skipped] = hits.prim[i]
-            n_skipped += 1
+            ray.skipped[0, i] = hits.prim[i]
             body = hits.owner[i]
-            if body < 0 or bodies.kind[body] != TRANSPARENT:
+            if body < 0:
                 continue
-            n_inside = toggled(ray.inside[0], n_inside, body)
-            if n_inside < 0:
-                return False
-        t = hits.t[0]
-        origin = (
-            origin[0] + t * direction[0],
-            origin[1] + t * direction[1],
-            origin[2] + t * direction[2],
-        )
-        leaving = Leaving(leaving.face, leaving.side, False)
+            if face < 0:
+                face = i
+            if bodies.kind[body] == TRANSPARENT:
+                n_inside = toggled(ray.inside[0], n_inside, body)
+                if n_inside < 0:
+                    return False
+        n_skipped = count
+        if face >= 0:
+            origin = point_of(mesh, hits, face)
+            leaving = Leaving(hits.prim[face], -1.0 if hits.front[face] else 1.0, False)
+        else:
+            t = hits.t[0]
+            origin = (
+                origin[0] + t * direction[0],
+                origin[1] + t * direction[1],
+                origin[2] + t * direction[2],
+            )
+            leaving = Leaving(leaving.face, leaving.side, False)
     ray.n_inside[0] = n_inside
     return True
 
@@ -114,7 +121,9 @@ def find_inside(world, ray, hits):
 def starts_in_gap(world, ray, hits):
     """Whether the nearest hit of a fresh ray is a clear face that its own face lies dry on."""
     row = find_pair(world.mesh, ray.face[0], hits.prim[0])
-    if row < 0 or world.mesh.pair_kind[row] != DRY or hits.owner[0] < 0:
+    if row < 0 or world.mesh.pair_kind[row] != DRY:
+        return False
+    if hits.owner[0] < 0 or world.bodies.kind[hits.owner[0]] != TRANSPARENT:
         return False
     direction = take(ray.direction, 0)
     cosine = abs(cosine_of(world.mesh, world.detectors, hits.prim[0], direction))

@@ -11,7 +11,7 @@ from lumentrace.engine.inside import (
     medium_of,
     toggled,
 )
-from lumentrace.engine.query import Leaving, cosine_of, find_pair, hit_set
+from lumentrace.engine.query import Leaving, cosine_of, find_pair, hit_set, point_of
 from lumentrace.engine.state import ARRIVALS, KEYS, LOST, STEPS, TRAIL, deposit
 from lumentrace.engine.sums import (
     CUT_OFF,
@@ -23,7 +23,6 @@ from lumentrace.engine.sums import (
 )
 from lumentrace.engine.surface import act, finish_of
 from lumentrace.jit import kernel
-from lumentrace.kernels.triangle import drawn_back
 from lumentrace.kernels.vectors import put, take
 from lumentrace.models.dispatch import detector_bin_of, medium_advance
 from lumentrace.world.arrays import DRY, OPAQUE, TRANSPARENT
@@ -114,22 +113,6 @@ def detect(world, tally, rows, ray, b, ray_number, hits, count):
     if caught:
         deposit(tally, rows.detected, ray.weight[b])
     return caught
-
-
-@kernel
-def point_of(mesh, hits, i):
-    """Where hit i lies on its face, kept off the face's edges by the error of the intersection."""
-    face = hits.prim[i]
-    u, v = drawn_back(hits.u[i], hits.v[i], mesh.margin[face])
-    w = 1.0 - u - v
-    a = take(mesh.vertex, mesh.corner[face, 0])
-    b = take(mesh.vertex, mesh.corner[face, 1])
-    c = take(mesh.vertex, mesh.corner[face, 2])
-    return (
-        w * a[0] + u * b[0] + v * c[0],
-        w * a[1] + u * b[1] + v * c[1],
-        w * a[2] + u * b[2] + v * c[2],
-    )
 
 
 @kernel

@@ -12,7 +12,8 @@ import numpy as np
 
 from lumentrace.jit import kernel
 from lumentrace.kernels.hierarchy import STACK_DEPTH, enters_box
-from lumentrace.kernels.triangle import intersect, shear
+from lumentrace.kernels.triangle import drawn_back, intersect, shear
+from lumentrace.kernels.vectors import take
 from lumentrace.models.dispatch import detector_intersect
 from lumentrace.world.arrays import DRY
 
@@ -103,7 +104,8 @@ def _start(mesh, leaving, prim, t, cosine, reach):
         return t if t > 0.0 else inf
     row = find_pair(mesh, leaving.face, prim)
     if row >= 0 and abs(t) <= reach + mesh.pair_gap[row] / abs(cosine):
-        return max(t, 0.0) if leaving.fresh and mesh.pair_kind[row] == DRY else inf
+        faces_the_start = leaving.fresh and mesh.pair_kind[row] == DRY and cosine < 0.0
+        return max(t, 0.0) if faces_the_start else inf
     if t > 0.0:
         return t
     same = prim < len(mesh.body) and mesh.body[prim] == mesh.body[leaving.face]
@@ -253,6 +255,22 @@ def _one_event(mesh, detectors, direction, hits, count):
         _copy(hits, i, kept)
         kept += 1
     return kept
+
+
+@kernel
+def point_of(mesh, hits, i):
+    """Where hit i lies on its face, kept off the face's edges by the error of the intersection."""
+    face = hits.prim[i]
+    u, v = drawn_back(hits.u[i], hits.v[i], mesh.margin[face])
+    w = 1.0 - u - v
+    a = take(mesh.vertex, mesh.corner[face, 0])
+    b = take(mesh.vertex, mesh.corner[face, 1])
+    c = take(mesh.vertex, mesh.corner[face, 2])
+    return (
+        w * a[0] + u * b[0] + v * c[0],
+        w * a[1] + u * b[1] + v * c[1],
+        w * a[2] + u * b[2] + v * c[2],
+    )
 
 
 @kernel

@@ -4,7 +4,7 @@ from collections import Counter
 
 from lumentrace.analysis.account import Account, Flow
 from lumentrace.report.lines import plural
-from lumentrace.report.table import WIDTH, lay_out, wrap
+from lumentrace.report.table import lay_out, wrap
 from lumentrace.run.run import Run
 from lumentrace.units import format_with_error, grouped, plain
 
@@ -45,10 +45,10 @@ def account_lines(account: Account, in_lumens: bool) -> list[str]:
     lines = lay_out(rows, "<>>>")
     unhit = [name for name, flow in ways.items() if flow.error is None and name in account.absorbed]
     if unhit:
-        lines += wrap(f"No light met: {', '.join(unhit)}.", WIDTH)
+        lines += wrap(f"Nothing absorbed: {', '.join(unhit)}.")
     if account.cut_off.error is None and account.unresolved.error is None:
         lines.append("No light was cut off, none is unresolved.")
-    lines.append(f"The sum less what was emitted: {account.closure:.0e} of it.")
+    lines.append(f"Sum less emitted: {account.closure:.0e} of the emitted.")
     return lines
 
 
@@ -70,7 +70,8 @@ def _head(account: Account, in_lumens: bool) -> str:
 
 def _cells(flow: Flow, in_lumens: bool) -> list[str]:
     value, error = (flow.lumens, flow.lumens_error) if in_lumens else (flow.value, flow.error)
-    return [*format_with_error(value, error), f"{100.0 * flow.share:.2f}"]
+    share = round(100.0 * flow.share, 2) + 0.0  # no "-0.00"
+    return [*format_with_error(value, error), f"{share:.2f}"]
 
 
 def lost_json(run: Run) -> dict:
@@ -104,7 +105,7 @@ def lost_lines(run: Run) -> list[str]:
         return []
     rays = _lost_rays(run)
     first = "" if len(rays) == count else f"; of the first {grouped(len(rays))}"
-    lines = wrap(f"{plural(count, 'ray')} could not be followed to the end{first}:", WIDTH)
+    lines = wrap(f"{plural(count, 'ray')} could not be followed to the end{first}:")
     reasons = Counter((ray["reason"], ray["tag"]) for ray in rays)
     rows = [[f"  {grouped(n)}", reason, tag or ""] for (reason, tag), n in reasons.most_common(8)]
     return [*lines, *lay_out(rows, "><<", elastic=1)]

@@ -8,6 +8,7 @@ from lumentrace.report.lines import (
     limit_text,
     notice_lines,
     notices_json,
+    notices_of,
     plural,
 )
 from lumentrace.report.table import lay_out
@@ -86,7 +87,7 @@ def check_json(world: World) -> dict:
             {"measure": m.measure, "at_least": m.at_least, "at_most": m.at_most, "note": m.note}
             for m in world.scene.limits
         ],
-        "notices": notices_json(world.notices),
+        "notices": notices_json(notices_of(world)),
     }
 
 
@@ -120,8 +121,13 @@ def _head(world: World) -> list[str]:
     return [*head(world.scene.path.name, study.title), f"{', '.join(counts)}. Unit {study.length}."]
 
 
+def _short(value: float) -> str:
+    """To four digits."""
+    return plain(float(f"{value:.4g}"))
+
+
 def _size(size, factor: float = 1.0) -> str:
-    return " x ".join(f"{factor * float(x):.4g}" for x in size)
+    return " x ".join(_short(factor * float(x)) for x in size)
 
 
 def _parts(world: World) -> list[str]:
@@ -146,7 +152,7 @@ def _parts(world: World) -> list[str]:
 def _tags(world: World) -> list[str]:
     rows = [["tag", "faces", f"area {world.scene.study.length}2", "of its part", "finish"]]
     for t in world.tags:
-        rows.append([t.name, str(t.faces), f"{t.area:.4g}", f"{100 * t.share:.3g} %", t.finish])
+        rows.append([t.name, str(t.faces), _short(t.area), f"{100 * t.share:.3g} %", t.finish])
     return lay_out(rows, "<>>><")
 
 
@@ -156,13 +162,13 @@ def _contacts(world: World) -> list[str]:
     unit = world.scene.study.length
     rows = [["touching", f"area {unit}2", f"gap {unit}", "taken as"]]
     for c in world.contacts:
-        rows.append([", ".join(c.parts), f"{c.area:.4g}", f"{c.gap:.2g}", c.taken])
+        rows.append([", ".join(c.parts), _short(c.area), f"{c.gap:.2g}", c.taken])
     return lay_out(rows, "<>><")
 
 
 def _flux(watts: float, wavelength: float) -> str:
     lumens = EFFICACY * luminosity(wavelength) * watts
-    return f"{plain(watts)} W" if lumens == 0 else f"{plain(lumens)} lm ({watts:.4g} W)"
+    return f"{plain(watts)} W" if lumens == 0 else f"{plain(lumens)} lm ({_short(watts)} W)"
 
 
 def _pattern(source: Source) -> str:
@@ -194,7 +200,6 @@ def _detectors(world: World) -> list[str]:
     rows = [["detector", "cells", f"of {unit}", "counts", "light"]]
     for d in _used_detectors(world):
         cell = _size((d.size[0] / d.cells[0], d.size[1] / d.cells[1]))
-        unit_counted = "lx" if d.counts == "illuminance" else "W/m2"
         sides = "from both sides" if d.side == "both" else "from the front"
         what = "caught" if d.catch else "passes"
         rows.append(
@@ -202,7 +207,7 @@ def _detectors(world: World) -> list[str]:
                 d.name,
                 f"{d.cells[0]} x {d.cells[1]}",
                 cell,
-                f"{d.counts}, {unit_counted}",
+                f"{d.counts}, {_unit(f'{d.name}.mean', {d.name: d})}",
                 f"{sides}, {what}",
             ]
         )
@@ -210,15 +215,30 @@ def _detectors(world: World) -> list[str]:
 
 
 def _limits(world: World) -> list[str]:
+    detectors = {d.name: d for d in _used_detectors(world)}
     rows = [["limit", "", "note"]]
     for m in world.scene.limits:
-        rows.append([m.measure, limit_text(m.at_least, m.at_most, m.measure), m.note])
+        rows.append(
+            [m.measure, limit_text(m.at_least, m.at_most, _unit(m.measure, detectors)), m.note]
+        )
     return lay_out(rows, "<<<", elastic=2) if len(rows) > 1 else []
 
 
+def _unit(measure: str, detectors: dict[str, Detector]) -> str:
+    """Unit of a measure that has a limit."""
+    subject, _, kind = measure.rpartition(".")
+    if subject not in detectors:
+        return "%"  # absorbed or escaped
+    if kind.startswith("uniformity"):
+        return ""
+    seen = detectors[subject].counts == "illuminance"
+    return ("lm" if seen else "W") if kind == "flux" else ("lx" if seen else "W/m2")
+
+
 def _end(world: World) -> list[str]:
-    doubtful = sum(n.kind == "doubtful" for n in world.notices)
+    notices = notices_of(world)
+    doubtful = sum(n.kind == "doubtful" for n in notices)
     return [
-        *notice_lines(world.notices),
+        *notice_lines(notices),
         f"Nothing wrong, {doubtful} doubtful. Nothing was traced.",
     ]

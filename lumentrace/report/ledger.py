@@ -4,9 +4,8 @@ from pathlib import Path
 
 from lumentrace.analysis.ledger import PathRow, paths
 from lumentrace.analysis.samples import FEW
-from lumentrace.report.lines import CAUTION, head, plural
+from lumentrace.report.lines import CAUTION, head, plural, shown_path
 from lumentrace.report.table import WIDTH, lay_out
-from lumentrace.report.trace import shown_path
 from lumentrace.run.run import Run
 from lumentrace.units import format_with_error, grouped
 
@@ -69,7 +68,7 @@ def _detector(run: Run, name: str, top: int) -> list[str]:
     shown = rows[:top]
     share = sum(row.share or 0.0 for row in shown)
     unit = shown[0].unit
-    found = f"{name}: {plural(len(rows), 'path')}"
+    found = f"{name}: {plural(sum(row.source is not None for row in rows), 'path')}"
     if len(shown) < len(rows):
         found += f"; the strongest {len(shown)} bring {100 * share:.3g} % of its light"
     header = ["#", f"flux {unit}", "error", "share %", "error", "arrivals", ""]

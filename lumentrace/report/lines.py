@@ -1,10 +1,13 @@
 """Single lines that several reports share."""
 
+import os
 from collections.abc import Iterable
+from pathlib import Path
 
 from lumentrace.errors import Notice
-from lumentrace.report.table import WIDTH, wrap
+from lumentrace.report.table import wrap
 from lumentrace.units import plain
+from lumentrace.world.world import World
 
 
 def plural(number: int, noun: str) -> str:
@@ -14,7 +17,7 @@ def plural(number: int, noun: str) -> str:
 
 def head(file: str, title: str) -> list[str]:
     """File and title of a study."""
-    return wrap(f"{file}: {title}" if title else file, WIDTH)
+    return wrap(f"{file}: {title}" if title else file)
 
 
 def limit_text(at_least: float | None, at_most: float | None, unit: str) -> str:
@@ -27,14 +30,25 @@ def limit_text(at_least: float | None, at_most: float | None, unit: str) -> str:
     return f"{', '.join(bounds)} {unit}".rstrip()
 
 
+def notices_of(world: World) -> tuple[Notice, ...]:
+    """All that reading the scene and building its world had to say."""
+    return (*world.scene.notices, *world.notices)
+
+
 def notice_lines(notices: Iterable[Notice]) -> list[str]:
     """Doubtful ones first."""
     ordered = sorted(notices, key=lambda n: n.kind != "doubtful")
-    return [line for n in ordered for line in wrap(f"{n.kind}: {n.text}", WIDTH)]
+    return [line for n in ordered for line in wrap(f"{n.kind}: {n.text}")]
 
 
 def notices_json(notices: Iterable[Notice]) -> list[dict]:
     return [{"kind": n.kind, "text": n.text} for n in notices]
+
+
+def shown_path(path: Path) -> str:
+    """Relative to the working folder where it lies inside it."""
+    relative = os.path.relpath(path)
+    return str(path) if relative.startswith(os.pardir) else relative
 
 
 CAUTION = "Simulated: confirm by measurement."

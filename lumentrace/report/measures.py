@@ -1,8 +1,10 @@
 """Measures and limits as a table and as JSON."""
 
+from collections.abc import Iterable
+
 from lumentrace.analysis.measures import FEW_NOTE, NOT_HIT, Measure
 from lumentrace.report.lines import limit_text
-from lumentrace.report.table import WIDTH, lay_out, wrap
+from lumentrace.report.table import lay_out, wrap
 from lumentrace.units import format_with_error, plain
 
 _SPLIT = "_split"
@@ -12,7 +14,6 @@ _CELL_NOTES = (
     "by halves lean the other way: the cell is chosen on one half of the rays, valued on the other."
 )
 _NOT_HIT_NOTE = "Not hit is not zero: with 95 % confidence the truth is below the bound given."
-_NO_BOUND_NOTE = "Not hit, and no bound is proven for it: trace more rays."
 _UNSEEN_NOTE = "unseen: the most that light cut off or unresolved could change the value."
 
 
@@ -66,7 +67,9 @@ def _distance_text(measure: Measure, limit: dict) -> str:
     if measure.error is None or room is None:
         return "unknown"
     side = "inside" if room >= 0.0 else "beyond"
-    return f"{abs(room) / measure.error:.3g} {side}" if measure.error else f"{side}, no error"
+    if not measure.error:
+        return f"{side}, no error"
+    return f"{plain(float(f'{abs(room) / measure.error:.3g}'))} {side}"
 
 
 def measure_lines(
@@ -79,7 +82,8 @@ def measure_lines(
     by_measure: dict[str, list[dict]] = {}
     for limit in limits:
         by_measure.setdefault(limit["measure"], []).append(limit)
-    shown = [m for m in measures.values() if _is_shown(m.name, by_measure, single_cell)]
+    names = [name for name in _paired(measures) if _is_shown(name, by_measure, single_cell)]
+    shown = [measures[name] for name in names]
     with_unseen = any(m.unseen > 0.0 for m in shown)
     rows = [["measure", "value", "error", "unit", "unseen", "limit", "errors away"]]
     for m in shown:
@@ -89,7 +93,15 @@ def measure_lines(
     keep = [True, True, True, True, with_unseen, bool(limits), bool(limits)]
     rows = [[cell for cell, kept in zip(row, keep, strict=True) if kept] for row in rows]
     align = "".join(a for a, kept in zip("<>><><>", keep, strict=True) if kept)
-    return [*lay_out(rows, align), *_remarks(shown, with_unseen)]
+    remarks = _remarks(shown, with_unseen)
+    return [*lay_out(rows, align), *([""] if remarks else []), *remarks]
+
+
+def _paired(names: Iterable[str]) -> list[str]:
+    """Each name followed by its twin by halves."""
+    names = list(names)
+    whole = [name for name in names if not name.endswith(_SPLIT)]
+    return [n for name in whole for n in (name, name + _SPLIT) if n in names]
 
 
 def _is_shown(name: str, limited: dict, single_cell: set[str]) -> bool:
@@ -122,11 +134,12 @@ def _remarks(shown: list[Measure], with_unseen: bool) -> list[str]:
         remarks.append(_CELL_NOTES)
     if any(m.error is None and m.upper is not None for m in shown):
         remarks.append(_NOT_HIT_NOTE)
-    if any(m.error is None and m.upper is None for m in shown):
-        remarks.append(_NO_BOUND_NOTE)
+    unbound = [m.name for m in shown if m.error is None and m.upper is None]
+    if unbound:
+        remarks.append(f"Not hit, and no bound is proven: {', '.join(unbound)}.")
     few = [m.name for m in shown if FEW_NOTE in m.note]
     if few:
         remarks.append(f"{FEW_NOTE.capitalize()}, so that errors are rough: {', '.join(few)}.")
     if with_unseen:
         remarks.append(_UNSEEN_NOTE)
-    return [line for remark in remarks for line in wrap(remark, WIDTH)]
+    return [line for remark in remarks for line in wrap(remark, indent="")]

@@ -30,9 +30,9 @@ def lay_out(
     return lines
 
 
-def wrap(text: str, width: int) -> list[str]:
-    """Break at spaces, and inside a word only where it must; further lines are indented by two."""
-    return textwrap.wrap(text, width, subsequent_indent="  ", break_on_hyphens=False) or [""]
+def wrap(text: str, width: int = WIDTH, indent: str = "  ") -> list[str]:
+    """Break at spaces, and inside a word only where it must; further lines are indented."""
+    return textwrap.wrap(text, width, subsequent_indent=indent, break_on_hyphens=False) or [""]
 
 
 def _line(row, wrapped: str, align: str, widths: list[int], elastic: int) -> str:

@@ -1,15 +1,21 @@
 """What `trace` says when it is done."""
 
-import os
 import shlex
 from pathlib import Path
 
 from lumentrace.analysis.account import account
 from lumentrace.analysis.measures import Measure, measures
 from lumentrace.report.account import account_json, account_lines, lost_json, lost_lines
-from lumentrace.report.lines import CAUTION, head, notice_lines, notices_json
+from lumentrace.report.lines import (
+    CAUTION,
+    head,
+    notice_lines,
+    notices_json,
+    notices_of,
+    shown_path,
+)
 from lumentrace.report.measures import limits_json, measure_lines, measures_json
-from lumentrace.report.table import WIDTH, wrap
+from lumentrace.report.table import wrap
 from lumentrace.run.run import Run
 from lumentrace.units import grouped
 from lumentrace.world.world import World
@@ -27,7 +33,7 @@ def trace_json(run: Run, path: Path, world: World) -> dict:
         "limits": limits_json(found, run.limits),
         "account": account_json(account(run)),
         "lost": lost_json(run),
-        "notices": notices_json(world.notices),
+        "notices": notices_json(notices_of(world)),
     }
 
 
@@ -42,11 +48,12 @@ def trace_text(run: Run, path: Path, world: World, asked: int | None, seconds: f
         measure_lines(found, run.limits, single),
         account_lines(account(run), in_lumens),
         lost_lines(run),
-        notice_lines(n for n in world.notices if n.kind == "doubtful"),
+        notice_lines(n for n in notices_of(world) if n.kind == "doubtful"),
         [
             CAUTION,
-            f"Written: {shown_path(path)}",
-            f"Paths:   lumentrace ledger {shlex.quote(shown_path(path))}",
+            f"Written:  {shown_path(path)}",
+            f"Paths:    lumentrace ledger {shlex.quote(shown_path(path))}",
+            f"Pictures: lumentrace draw {shlex.quote(shown_path(path))}",
         ],
     )
     return "\n\n".join("\n".join(block) for block in blocks if block) + "\n"
@@ -69,14 +76,8 @@ def _traced(run: Run, world: World, found: dict[str, Measure], asked, seconds) -
             sentences.append(f"Not within {goal}: {until.measure} is known within {known}.")
     elif wanted != run.rays:
         sentences.append(f"Rounded up from {grouped(wanted)} to whole rounds of 65 536.")
-    return wrap(" ".join(sentences), WIDTH)
+    return wrap(" ".join(sentences))
 
 
 def _duration(seconds: float) -> str:
     return f"{seconds:.1f} s" if seconds < 10 else f"{seconds:.0f} s"
-
-
-def shown_path(path: Path) -> str:
-    """Relative to the working folder where it lies inside it."""
-    relative = os.path.relpath(path)
-    return str(path) if relative.startswith(os.pardir) else relative

@@ -11,6 +11,7 @@ from lumentrace.run.variables import LAYOUT, faults
 
 _SIGNATURE = b"\x89HDF\r\n\x1a\n"  # HDF5 file format specification, section II.A
 _PACKED = {"zlib": True, "complevel": 4, "shuffle": True}
+_WORTH_PACKING = 1024  # bytes; below, the chunk's index takes more than packing saves
 
 
 def write_run(run: Run, path: str | os.PathLike) -> None:
@@ -34,12 +35,12 @@ def write_run(run: Run, path: str | os.PathLike) -> None:
 
 
 def _encoding(tree: xarray.DataTree) -> dict[str, dict[str, dict]]:
-    """Every array of numbers packed; single values and names as they are."""
+    """Arrays of numbers packed; short ones and names as they are."""
     return {
         node.path: {
             name: _PACKED
             for name, variable in node.to_dataset(inherit=False).variables.items()
-            if variable.ndim and variable.dtype.kind in "fiu"
+            if variable.nbytes >= _WORTH_PACKING and variable.dtype.kind in "fiu"
         }
         for node in tree.subtree
     }

@@ -112,7 +112,8 @@ def _text(first: _Fault, found: list[_Fault], toml: Toml) -> str:
         return f"{value}; allowed: {allowed}"
     if kind == "value_error":
         return f"{value}; {about['error']}"
-    return f"{value}; {_NEEDED.get(kind, first.message).format(**about)}"
+    needed = _NEEDED[kind].format(**about) if kind in _NEEDED else first.message
+    return f"{value}; {needed}"
 
 
 def _unknown_key(route: Route, known: list[str], toml: Toml) -> str:

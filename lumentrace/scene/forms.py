@@ -12,6 +12,7 @@ from pydantic import ConfigDict, Field, Tag
 from lumentrace.scene.values import (
     Count,
     Direction,
+    EventCount,
     FilePath,
     Form,
     Length,
@@ -321,7 +322,7 @@ class TraceForm(Form):
     rays: Count | None = key("Rays to trace; with `until` the default of rays_max.", None)
     until: UntilForm | None = key("Trace until a measure is known this well.", None)
     rays_max: Count | None = key("With `until`: end here at the latest.", None)
-    events_max: Annotated[Count, Field(le=2**31 - 1)] = key("Most events of one ray.", 100_000)
+    events_max: EventCount = key("Most events of one ray.", 100_000)
     map_memory: Memory = key(
         'Memory for the batches of all maps, such as "2 GiB".', "2 GiB", validate_default=True
     )

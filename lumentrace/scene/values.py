@@ -56,11 +56,16 @@ def one_of(*keys: str) -> dict[str, Any]:
     return {"oneOf": [{"required": [name]} for name in keys]}
 
 
-def _whole(value: Any) -> Any:
+def _to_whole(value: Any) -> Any:
     """2e6 is a whole number, too."""
     if isinstance(value, float) and value.is_integer():
         return int(value)
     return value
+
+
+def whole(least: int, most: int) -> Any:
+    """The type of whole numbers from `least` to `most`."""
+    return Annotated[int, Field(strict=True, ge=least, le=most), BeforeValidator(_to_whole)]
 
 
 def _direction(vector: tuple[float, float, float]) -> tuple[float, float, float]:
@@ -98,7 +103,6 @@ def _path(text: str) -> str:
 
 
 _REAL = {"strict": True, "allow_inf_nan": False}
-_INTEGER = BeforeValidator(_whole)
 
 Number = Annotated[float, Field(**_REAL, ge=-FARTHEST, le=FARTHEST)]
 Positive = Annotated[float, Field(**_REAL, gt=0, le=FARTHEST)]
@@ -106,9 +110,10 @@ NotNegative = Annotated[float, Field(**_REAL, ge=0, le=FARTHEST)]
 Share = Annotated[float, Field(**_REAL, ge=0, le=1)]
 _BAND = {"minimum": SHORTEST_NM, "maximum": LONGEST_NM}
 Wavelength = Annotated[float, Field(**_REAL, json_schema_extra=_BAND), AfterValidator(_wavelength)]
-Count = Annotated[int, _INTEGER, Field(strict=True, ge=1, le=10**12)]
-Seed = Annotated[int, _INTEGER, Field(strict=True, ge=0, le=2**63 - 1)]
-Priority = Annotated[int, _INTEGER, Field(strict=True, ge=-(10**9), le=10**9)]
+Count = whole(1, 10**12)
+EventCount = whole(1, 2**31 - 1)
+Seed = whole(0, 2**63 - 1)
+Priority = whole(-(10**9), 10**9)
 Yes = Annotated[bool, Field(strict=True)]
 Text = Annotated[str, Field(strict=True)]
 Name = Annotated[
@@ -119,7 +124,7 @@ Memory = Annotated[str, Field(strict=True), AfterValidator(_memory)]  # bytes, o
 Point = tuple[Number, Number, Number]
 Direction = Annotated[Point, AfterValidator(_direction)]
 Size = tuple[Positive, Positive]
-Length = Literal["mm", "cm", "m", "in", "ft"]
+Length = Literal[units.LENGTHS]
 
 
 def _form_of(value: Any) -> str | None:

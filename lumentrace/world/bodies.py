@@ -7,7 +7,7 @@ import numpy as np
 
 from lumentrace.scene.model import OPAQUE, SHEET, Part
 from lumentrace.world import arrays
-from lumentrace.world.geometry import file_rounding, largest
+from lumentrace.world.geometry import file_rounding
 from lumentrace.world.meshes import PartMesh
 from lumentrace.world.placement import copies, n_copies
 from lumentrace.world.tags import PartTags
@@ -59,7 +59,8 @@ def placed(parts: Sequence[BuiltPart]) -> list[Body]:
         total = first_face + count * max(len(mesh.corner), len(mesh.vertex))
         if total > _MOST:
             raise part.place.error(
-                "repeat", f"{count} copies of {len(mesh.corner)} faces are too many; allowed: {_MOST}"
+                "repeat",
+                f"{count} copies of {len(mesh.corner)} faces are too many; allowed: {_MOST}",
             )
         scaled = mesh.vertex * part.scale
         rounding = file_rounding(scaled)
@@ -67,13 +68,6 @@ def placed(parts: Sequence[BuiltPart]) -> list[Body]:
             vertex = pose.points(scaled)
             name = part.name if count == 1 else f"{part.name} ({number})"
             lower, upper = vertex.min(axis=0), vertex.max(axis=0)
-            bodies.append(
-                Body(name, row, vertex, mesh.corner, first_face, lower, upper, rounding)
-            )
+            bodies.append(Body(name, row, vertex, mesh.corner, first_face, lower, upper, rounding))
             first_face += len(mesh.corner)
     return bodies
-
-
-def size_of(bodies: Sequence[Body], points) -> float:
-    """Largest absolute coordinate of all bodies and of further points, (n, 3)."""
-    return max([largest(points), *(largest(np.stack([b.lower, b.upper])) for b in bodies)])

@@ -74,9 +74,9 @@ def refuse_two_finishes(scene: Scene, parts: Sequence[BuiltPart], tag_a, tag_b, 
             if all(finishes):
                 raise other.part.place.error(
                     "finish",
-                    f'"{other.part.name}:{name[b]}" ({finishes[1]}) and "{one.part.name}:{name[a]}" '
-                    f"({finishes[0]}) lie on one another and both name a finish; leave one of them "
-                    "uncoated, or give one part a larger priority",
+                    f'"{other.part.name}:{name[b]}" ({finishes[1]}) and '
+                    f'"{one.part.name}:{name[a]}" ({finishes[0]}) lie on one another and both name '
+                    "a finish; leave one of them uncoated, or give one part a larger priority",
                 )
 
 

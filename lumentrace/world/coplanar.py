@@ -8,6 +8,7 @@ from lumentrace.world.boxes import box_pairs
 from lumentrace.world.overlap import overlap
 
 _AT_ONCE = 100_000  # pairs compared at once, to bound the memory
+_THIN = 1e-12  # area over square of the perimeter below which an overlap is rounding
 _STEEPEST = 0.05  # sine between planes above which faces are not called parallel, however small
 
 
@@ -40,7 +41,10 @@ def coplanar_pairs(faces: Faces) -> Pairs:
     narrower than that distance, are not in contact.
     """
     a, b = _candidates(faces)
-    found = [_compared(faces, a[i : i + _AT_ONCE], b[i : i + _AT_ONCE]) for i in range(0, len(a), _AT_ONCE)]
+    found = [
+        _compared(faces, a[i : i + _AT_ONCE], b[i : i + _AT_ONCE])
+        for i in range(0, len(a), _AT_ONCE)
+    ]
     if not found:
         none = np.empty(0, np.int64)
         return Pairs(none, none, np.empty(0), np.empty(0), np.empty(0, bool))
@@ -93,7 +97,7 @@ def _compared(faces: Faces, a, b):
     likely = (sine <= np.minimum(steepest, _STEEPEST)) & (np.abs(height) <= reach)
     a, b, distance = a[likely], b[likely], distance[likely]
     common = overlap(faces.triangle[a], faces.normal[a], faces.triangle[b], faces.normal[b])
-    met = (common.area > 0) & (common.gap <= distance)
+    met = (common.area > _THIN * common.perimeter**2) & (common.gap <= distance)
     opposed = (faces.normal[a] * faces.normal[b]).sum(axis=1) < 0
     pairs = Pairs(a[met], b[met], common.area[met], common.gap[met], opposed[met])
     # A strip of width w and any length has an area of w/2 times its perimeter.

@@ -2,8 +2,7 @@
 
 Only edges need asking: where two surfaces of triangles cross, an edge of one pierces a face of the
 other. A surface that merely touches another is pierced too, so the pieces into which an edge is cut
-decide: a piece whose middle lies inside the other surface, farther from it than the tolerance, is
-a crossing.
+decide: one must lie inside the other surface and one outside, farther from it than the tolerance.
 """
 
 import numpy as np
@@ -11,7 +10,7 @@ import numpy as np
 from lumentrace.world.boxes import box_pairs
 from lumentrace.world.geometry import face_boxes, triangle_distance
 from lumentrace.world.inside import is_near, winding
-from lumentrace.world.topology import edges_of
+from lumentrace.world.topology import edges_of, shell_boxes, shell_faces
 
 _AT_ONCE = 256  # points asked at once, so that a plain crossing is found without asking them all
 
@@ -41,18 +40,32 @@ def pierced(start, end, triangle, distance):
 
 
 def surfaces_cross(vertex_a, corner_a, vertex_b, corner_b, distance):
-    """A point where two closed surfaces lie inside one another by more than `distance`, or None.
+    """A point where two closed surfaces cross by more than `distance`, or None.
 
-    One surface wholly within the other is no crossing.
+    They cross where a shell of one has points inside the other and points outside, both farther
+    from it than `distance`. A shell wholly within the other surface is no crossing.
     """
     for one, other in (
         ((vertex_a, corner_a), (vertex_b, corner_b)),
         ((vertex_b, corner_b), (vertex_a, corner_a)),
     ):
-        point = _first_inside(_probes(*one, *other, distance), *other, distance)
-        if point is not None:
-            return point
+        for shell in _shells_near(*one, *other, distance):
+            probes = _probes(one[0], shell, *other, distance)
+            point = _first_inside(probes, *other, distance)
+            if point is not None:
+                ends = one[0][np.unique(shell)]
+                if _any_outside(np.concatenate([ends, probes]), *other, distance):
+                    return point
     return None
+
+
+def _shells_near(vertex_a, corner_a, vertex_b, corner_b, distance):
+    """The shells of a, each (n, 3), whose boxes meet the box of b."""
+    shells = [corner_a[faces] for faces in shell_faces(corner_a)]
+    lower, upper = shell_boxes(vertex_a, shells)
+    box = vertex_b[corner_b].reshape(-1, 3)
+    meets = (upper >= box.min(axis=0) - distance) & (lower <= box.max(axis=0) + distance)
+    return [shells[row] for row in np.flatnonzero(meets.all(axis=1))]
 
 
 def _in_box(vertex, corner, vertex_b, corner_b, distance):
@@ -104,6 +117,34 @@ def _first_inside(point, vertex, corner, distance):
         if len(inside):
             return some[inside[0]]
     return None
+
+
+def _any_outside(point, vertex, corner, distance) -> bool:
+    """Whether any of the points is outside the surface, farther from it than `distance`."""
+    box = vertex[corner].reshape(-1, 3)
+    beyond = (point < box.min(axis=0) - distance) | (point > box.max(axis=0) + distance)
+    if beyond.any():
+        return True
+    for first in range(0, len(point), _AT_ONCE):
+        some = point[first : first + _AT_ONCE]
+        some = some[~is_near(some, vertex, corner, distance)]
+        if (winding(some, vertex, corner) == 0).any():
+            return True
+    return False
+
+
+def is_star(vertex, corner) -> bool:
+    """Whether all of a closed surface can be seen from the middle of its box.
+
+    Every face then turns its inner side to that point, and the surface goes round it once: it is a
+    sphere drawn in and out along rays, and cannot cross itself. False says nothing.
+    """
+    points = vertex[corner].reshape(-1, 3)
+    middle = 0.5 * (points.min(axis=0) + points.max(axis=0))
+    a, b, c = (vertex[corner[:, k]] - middle for k in range(3))
+    if not ((a * np.cross(b, c)).sum(axis=1) > 0).all():
+        return False
+    return bool(winding(middle[None], vertex, corner)[0] == 1)
 
 
 def self_crossings(vertex, corner, distance):

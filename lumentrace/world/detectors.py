@@ -33,5 +33,7 @@ def detector_table(detectors: Sequence[Detector], frames, size: float) -> Detect
         catches=np.array([detector.catch for detector in detectors], bool),
         two_sided=np.array([detector.side == "both" for detector in detectors], bool),
         photometric=np.array([detector.counts == "illuminance" for detector in detectors], bool),
-        error=plane_error(size, 2 * half.max(axis=1, initial=0), 2 * half.min(axis=1, initial=1e300)),
+        error=plane_error(
+            size, 2 * half.max(axis=1, initial=0), 2 * half.min(axis=1, initial=1e300)
+        ),
     )

@@ -16,6 +16,7 @@ from lumentrace.world.materials import AIR, tag_finish
 from lumentrace.world.start_media import StartMedium, shown
 
 _IN_A_ROW = 3  # transparent bodies, one behind the other, from which a stack is suspected
+_FLAT = 1.5  # times its smallest extent: no more than that is how deep a plate is along a stack
 
 
 def _doubtful(text: str) -> Notice:
@@ -28,7 +29,7 @@ def start_doubts(scene: Scene, name: str, media: Sequence[StartMedium]) -> list[
         return []
     notices = [
         _doubtful(
-            f"source {name} starts in {shown(scene, media)}: its flux and pattern are those in there"
+            f"source {name} starts in {shown(scene, media)}: flux and pattern are those in there"
         )
     ]
     around = scene.media[scene.study.surroundings].index
@@ -53,9 +54,11 @@ def stack_doubts(scene: Scene, parts: Sequence[BuiltPart], bodies: Sequence[Body
     ]
     lower = np.array([body.lower for body in clear]).reshape(-1, 3)
     upper = np.array([body.upper for body in clear]).reshape(-1, 3)
+    extent = upper - lower
     most = 0
     for axis in range(3):
-        low, high = lower.copy(), upper.copy()
+        flat = extent[:, axis] <= _FLAT * extent.min(axis=1)
+        low, high = lower[flat], upper[flat]
         low[:, axis] = high[:, axis] = 0.0
         middle = 0.5 * (low + high)
         row, _ = box_pairs(middle, middle, low, high)
@@ -64,8 +67,8 @@ def stack_doubts(scene: Scene, parts: Sequence[BuiltPart], bodies: Sequence[Body
         return []
     return [
         _doubtful(
-            f"{most} transparent bodies stand in a row: light is taken as unpolarised at each surface, "
-            "which is approximate where it passes several at a slant"
+            f"{most} transparent bodies stand in a row: light is taken as unpolarised at each "
+            "surface, which is approximate where it passes several at a slant"
         )
     ]
 
@@ -75,65 +78,69 @@ def _any_uncoated(scene: Scene, built: BuiltPart) -> bool:
 
 
 def detector_doubts(
-    detector: Detector, place, size, mesh: Mesh, bodies: Sequence[Body], distance: float
+    detector: Detector, place, half, mesh: Mesh, bodies: Sequence[Body], distance: float
 ) -> list[Notice]:
-    """A detector that faces of parts cross; one that lies on a face is meant to."""
-    rim = corners(place, size)
-    planes = rim[[[0, 1, 2], [0, 2, 3]]]
-    box = np.stack([rim.min(axis=0) - distance, rim.max(axis=0) + distance])
+    """A detector that parts pass through; one that touches them, within `distance`, does not.
+
+    place, half: of `frames.detector_frame`.
+    """
+    rim = corners(place, half)
     lower, upper = face_boxes(mesh.vertex, mesh.corner)
-    faces = np.flatnonzero(((upper >= box[0]) & (lower <= box[1])).all(axis=1))
+    meets = (upper >= rim.min(axis=0) - distance) & (lower <= rim.max(axis=0) + distance)
+    faces = np.flatnonzero(meets.all(axis=1))
     triangle = mesh.vertex[mesh.corner[faces]]
-    points, owners = [], []
-    for k in range(3):
-        for plane in planes:
-            start, end = triangle[:, k], triangle[:, (k + 1) % 3]
-            row, share = pierced(start, end, np.broadcast_to(plane, triangle.shape), distance)
-            points.append(_between(start, end, row, share))
-            owners.append(mesh.body[faces[row]][_truly(share)])
-    for k in range(4):
-        start, end = (np.broadcast_to(rim[(k + i) % 4], (len(faces), 3)) for i in (0, 1))
-        row, share = pierced(start, end, triangle, distance)
-        points.append(_between(start, end, row, share))
-        owners.append(mesh.body[faces[row]][_truly(share)])
-    owner = np.concatenate(owners)
-    if not len(owner):
+    found = [
+        *(
+            _through_plane(triangle[:, k], triangle[:, k - 1], place, half, distance)
+            for k in range(3)
+        ),
+        *(_through_faces(rim[k], rim[k - 1], triangle, distance) for k in range(4)),
+    ]
+    row = np.concatenate([rows for rows, _ in found])
+    if not len(row):
         return []
-    first = int(np.argmin(owner))
-    near = shown_point(np.concatenate(points)[first])
+    first = int(np.argmin(row))
+    name = bodies[mesh.body[faces[row[first]]]].name
+    near = shown_point(np.concatenate([points for _, points in found])[first])
     return [
         _doubtful(
-            f"detector {detector.name} is crossed by {bodies[owner[first]].name} near {near}: what "
-            "lies inside or behind it counts nothing, or light inside it is counted"
+            f"detector {detector.name} passes through {name} near {near}: some of its cells lie "
+            "inside that part or behind it"
         )
     ]
 
 
-def _truly(share):
-    """Pierced between the ends, not touched by one."""
-    return (share > 0) & (share < 1)
+def _through_plane(start, end, place, half, distance):
+    """(row, point) of edges, (n, 3), that pass through a rectangle, farther than distance from
+    its rim and with ends farther than that from its plane."""
+    center, normal, sides = place[0], place[1], place[2:]
+    before, after = (start - center) @ normal, (end - center) @ normal
+    through = (before * after < 0) & (np.minimum(abs(before), abs(after)) > distance)
+    row = np.flatnonzero(through)
+    share = before[row] / (before[row] - after[row])
+    point = start[row] + share[:, None] * (end[row] - start[row])
+    inner = (np.abs((point - center) @ sides.T) < half - distance).all(axis=1)
+    return row[inner], point[inner]
 
 
-def _between(start, end, row, share):
-    inner = _truly(share)
-    row, share = row[inner], share[inner]
-    return start[row] + share[:, None] * (end[row] - start[row])
+def _through_faces(start, end, triangle, distance):
+    """(row, point) of triangles that one edge passes through, not touching with an end."""
+    starts, ends = (np.broadcast_to(end_, (len(triangle), 3)) for end_ in (start, end))
+    row, share = pierced(starts, ends, triangle, distance)
+    inner = (share > 0) & (share < 1)
+    return row[inner], start + share[inner][:, None] * (end - start)
 
 
-def rounding_doubts(
-    parts: Sequence[BuiltPart], bodies: Sequence[Body], altitude
-) -> list[Notice]:
+def rounding_doubts(parts: Sequence[BuiltPart], bodies: Sequence[Body], altitude) -> list[Notice]:
     """Faces that are lost because a copy stands too far from the origin. altitude: (F,)."""
-    notices = []
+    notices: dict[int, Notice] = {}  # one for each part
     for body in bodies:
         built = parts[body.part]
         lost = altitude[body.first_face : body.first_face + len(body.corner)] == 0
         lost &= built.mesh.facets.altitude > 0
-        if lost.any():
-            notices.append(
-                _doubtful(
-                    f"part {body.name} stands so far from the origin that {lost.sum()} of its faces "
-                    "are smaller than rounding there and are never hit"
-                )
+        if lost.any() and body.part not in notices:
+            notices[body.part] = _doubtful(
+                f"part {body.name} stands so far from the origin that {lost.sum()} of its faces "
+                "are smaller than rounding there and are never hit"
             )
-    return notices
+    return list(notices.values())

@@ -11,6 +11,7 @@ from lumentrace.world.boxes import box_pairs
 from lumentrace.world.crossing import surfaces_cross
 from lumentrace.world.geometry import shown_point
 from lumentrace.world.inside import is_inside
+from lumentrace.world.topology import shell_faces
 
 
 def ranks(parts: Sequence[BuiltPart], bodies: Sequence[Body], touch):
@@ -59,7 +60,15 @@ def _nested(parts, bodies, touch, clear, priority):
                 f'"{a.name}" and "{b.name}" cross near {shown_point(point)} and both have priority '
                 f"{priority[i]}; the larger priority fills what they share",
             )
-        if is_inside(a.vertex, a.corner, b.vertex, b.corner, distance):
+        if _wholly_inside(a, b, distance):
             yield i, j
-        elif is_inside(b.vertex, b.corner, a.vertex, a.corner, distance):
+        elif _wholly_inside(b, a, distance):
             yield j, i
+
+
+def _wholly_inside(a: Body, b: Body, distance) -> bool:
+    """Whether every shell of a lies within b, which a does not cross."""
+    return all(
+        is_inside(a.vertex, a.corner[faces], b.vertex, b.corner, distance)
+        for faces in shell_faces(a.corner)
+    )

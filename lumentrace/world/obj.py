@@ -46,7 +46,7 @@ def read_obj(data: bytes) -> RawMesh:
 def _statements(data: bytes):
     """(line number, statement) of each line that says something; a backslash joins lines."""
     if b"\0" in data[:1000]:
-        raise MeshFault("not an OBJ file: it is not text")
+        raise MeshFault("is not an OBJ file: it is not text")
     joined, first = "", 0
     for line, text in enumerate(data.decode("utf-8-sig", "replace").splitlines(), 1):
         first = first or line
@@ -58,7 +58,7 @@ def _statements(data: bytes):
             yield first, joined.strip()
         joined, first = "", 0
     if joined.strip():
-        raise MeshFault(f"cut short: line {first} goes on after the end of the file")
+        raise MeshFault(f"is cut short: line {first} goes on after the end of the file")
 
 
 def _numbers(words, line):
@@ -93,7 +93,7 @@ def _check_range(corners, lines, count):
     wrong = [row for row, polygon in enumerate(corners) if max(polygon) >= count]
     if wrong:
         raise MeshFault(
-            f"{len(wrong)} faces use vertices that are not there, the first at line "
+            f"has {len(wrong)} faces with vertices that are not there, the first at line "
             f"{lines[wrong[0]]}: vertex {max(corners[wrong[0]]) + 1} of {count}; the file may be "
             "cut short"
         )

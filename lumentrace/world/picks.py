@@ -70,13 +70,15 @@ def grown(vertex, corner, facets: Facets, start: int, over: float, free):
 def _normals_of_slivers_too(vertex, corner, facets: Facets):
     """Normals in which a sliver takes that of the face beyond its longest edge.
 
-    So growth passes a sliver as if the two faces that it parts met in one edge.
+    So growth passes a sliver as if the two faces that it parts met in one edge. Of a face that is
+    no higher than the rounding of its file the normal says nothing, and it is a sliver here.
     """
     normal = facets.normal.copy()
     edges = edges_of(corner)
     across = partners(edges)
     length = np.linalg.norm(np.diff(vertex[edges.ends], axis=1)[:, 0], axis=1)
-    todo = np.flatnonzero(facets.area == 0)
+    todo = np.flatnonzero(facets.altitude <= file_rounding(vertex))
+    normal[todo] = 0.0  # one that finds no other normal bends nothing
     longest = 3 * todo + np.argmax(length[edges.of_half].reshape(-1, 3)[todo], axis=1)
     todo, longest = todo[across[longest] >= 0], longest[across[longest] >= 0]
     beyond = across[longest] // 3

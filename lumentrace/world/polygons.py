@@ -26,7 +26,7 @@ def fanned(vertex, corners, lines):
         if worst is not None and (worst < _FOLDED).any():
             bad = np.flatnonzero(worst < _FOLDED)
             raise MeshFault(
-                f"{len(bad)} polygons are dented so that no fan of triangles fills them, the first "
+                f"has {len(bad)} polygons dented so that no fan of triangles fills them, the first "
                 f"at line {lines[rows[bad[0]]]}; export triangles"
             )
         turned = np.take_along_axis(ring, (start[:, None] + np.arange(size)) % size, axis=1)

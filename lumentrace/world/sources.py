@@ -28,9 +28,7 @@ class Lit(NamedTuple):
     faces: np.ndarray  # (n,) int64 emitting faces of all bodies
 
 
-def emitting_faces(
-    source: Source, parts: Sequence[BuiltPart], bodies: Sequence[Body], tag, area
-):
+def emitting_faces(source: Source, parts: Sequence[BuiltPart], bodies: Sequence[Body], tag, area):
     """(n,) int64 faces with area that a source names, on all copies; none for other sources.
 
     tag, area: (F,) of the faces of all bodies. Raises UserError for a tag that no face has.

@@ -5,7 +5,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from lumentrace.scene.model import Faces, Scene
+from lumentrace.scene.model import Faces, Point, Scene
 from lumentrace.world.arrays import DRY, TRANSPARENT, Mesh
 from lumentrace.world.bodies import Body, BuiltPart
 from lumentrace.world.frames import spread
@@ -14,6 +14,7 @@ from lumentrace.world.inside import winding
 from lumentrace.world.materials import AIR
 from lumentrace.world.sources import Lit
 
+_BEFORE = 4.0  # distances of touch before a surface at which its medium is looked up
 _FACES_ASKED = 16  # emitting faces of one source that are looked at
 
 
@@ -36,6 +37,8 @@ def start_media(
     """
     if not isinstance(lit.source.shape, Faces):
         points = spread(lit.source, lit.place, lit.size)
+        if not isinstance(lit.source.shape, Point):
+            points = points + _BEFORE * touch.max(initial=0.0) * lit.place[1]
         return tuple(dict.fromkeys(_holding(points, parts, bodies, rank, around)))
     asked = lit.faces[np.unique(np.linspace(0, len(lit.faces) - 1, _FACES_ASKED).astype(int))]
     found = []
@@ -46,7 +49,7 @@ def start_media(
             part = parts[bodies[mesh.body[across]].part].part
             found.append(StartMedium(AIR, None, part.name))
             continue
-        before = point + 4 * touch[mesh.body[face]] * mesh.normal[face]
+        before = point + _BEFORE * touch[mesh.body[face]] * mesh.normal[face]
         found.extend(_holding(before[None], parts, bodies, rank, around))
     return tuple(dict.fromkeys(found))
 

@@ -5,6 +5,7 @@ import numpy as np
 from lumentrace.world.raw import Labels, MeshFault, Namer, RawMesh
 
 _HEAD = 84  # bytes before the first face of a binary file: a title of 80, the count of faces
+_MARK = b"\xef\xbb\xbf"  # a byte-order mark
 _FACE = np.dtype([("normal", "<f4", 3), ("corner", "<f4", (3, 3)), ("attribute", "<u2")])
 
 
@@ -14,13 +15,13 @@ def read_stl(data: bytes) -> RawMesh:
     Raises MeshFault for a file that is cut short, too long for its count, or not STL.
     """
     if _is_ascii(data):
-        return _ascii(data)
+        return _ascii(data.removeprefix(_MARK))
     if len(data) < _HEAD:
-        raise MeshFault(f"cut short: {len(data)} bytes, a binary STL begins with {_HEAD}")
+        raise MeshFault(f"is cut short: {len(data)} bytes, a binary STL begins with {_HEAD}")
     count = int.from_bytes(data[80:_HEAD], "little")
     held = len(data) - _HEAD
     if held != count * _FACE.itemsize:
-        kind = "cut short" if held < count * _FACE.itemsize else "too long for its count"
+        kind = "is cut short" if held < count * _FACE.itemsize else "is too long for its count"
         raise MeshFault(
             f"{kind}: it announces {count} faces ({_HEAD + count * _FACE.itemsize} bytes) and has "
             f"{len(data)} bytes; export it again"
@@ -31,7 +32,7 @@ def read_stl(data: bytes) -> RawMesh:
 
 def _is_ascii(data: bytes) -> bool:
     """Whether it is text: begins with `solid` and is not exactly a binary file all the same."""
-    if data[:200].lstrip()[:5].lower() != b"solid":
+    if data[:200].removeprefix(_MARK).lstrip()[:5].lower() != b"solid":
         return False
     count = int.from_bytes(data[80:_HEAD], "little")
     if len(data) == _HEAD + count * _FACE.itemsize:
@@ -67,7 +68,7 @@ def _ascii(data: bytes) -> RawMesh:
         elif head not in ("", "outer", "endloop", "endfacet") or (head == "endfacet" and left):
             raise MeshFault(f"line {line}: found {_shown(text)} where no such line may stand")
     if solid is not None or left:
-        raise MeshFault(f"cut short: it ends at line {line} without endsolid; export it again")
+        raise MeshFault(f"is cut short: it ends at line {line} without endsolid; export it again")
     return _mesh(np.array(numbers, np.float64).reshape(-1, 3), solids.labels(rows))
 
 

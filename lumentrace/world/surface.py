@@ -1,10 +1,9 @@
 """Is the surface of a part fit for what fills it? Its winding, its holes, its crossings."""
 
-
 from lumentrace.errors import Notice, UserError
 from lumentrace.scene.model import OPAQUE, SHEET, Part
 from lumentrace.world.boxes import box_pairs
-from lumentrace.world.crossing import self_crossings, surfaces_cross
+from lumentrace.world.crossing import is_star, self_crossings, surfaces_cross
 from lumentrace.world.geometry import file_rounding, shown_point
 from lumentrace.world.topology import (
     edges_of,
@@ -96,8 +95,8 @@ def _require_solid(part, vertex, edges, is_open, two_sided):
             at = shown_point(vertex[edges.ends[wrong][0]].mean(axis=0))
             raise mesh_fault(
                 part,
-                f"{text.format(n=wrong.sum())}, the first at {at}; a medium ({part.medium}) needs a "
-                'closed surface: mend it in CAD, or make the part "opaque" or a "sheet"',
+                f"{text.format(n=wrong.sum())}, the first at {at}; a medium ({part.medium}) needs "
+                'a closed surface: mend it in CAD, or make the part "opaque" or a "sheet"',
             )
     if not two_sided:
         raise mesh_fault(part, f"has one side only; a medium ({part.medium}) needs an inside")
@@ -106,9 +105,12 @@ def _require_solid(part, vertex, edges, is_open, two_sided):
 def _refuse_crossing(part, vertex, corner):
     """Refuses a surface around a medium that crosses itself."""
     rounding = file_rounding(vertex)
-    points = self_crossings(vertex, corner, rounding)
+    shells = [corner[faces] for faces in shell_faces(corner)]
+    points = []
+    if not all(is_star(vertex, shell) for shell in shells):  # cheap, and true of most lenses
+        points = self_crossings(vertex, corner, rounding)
     if not len(points):
-        points = _shells_crossing(vertex, corner, rounding)
+        points = _shells_crossing(vertex, shells, rounding)
     if len(points):
         at = shown_point(points[0])
         raise mesh_fault(
@@ -118,9 +120,8 @@ def _refuse_crossing(part, vertex, corner):
         )
 
 
-def _shells_crossing(vertex, corner, rounding):
+def _shells_crossing(vertex, shells, rounding):
     """Points, one a pair, where closed shells of one mesh lie in one another."""
-    shells = [corner[faces] for faces in shell_faces(corner)]
     i, j = box_pairs(*shell_boxes(vertex, shells), *shell_boxes(vertex, shells))
     found = (
         surfaces_cross(vertex, shells[a], vertex, shells[b], rounding)

@@ -11,13 +11,13 @@ from pathlib import Path
 import numpy as np
 import trimesh
 
-HOUSING_LENGTH, HOUSING_WIDTH, HOUSING_HEIGHT = 6.0, 3.0, 1.6
-BASELINE = 3.0  # between the axes of the two chimneys
-WELL_DEPTH = 1.2
+HOUSING_LENGTH, HOUSING_WIDTH, HOUSING_HEIGHT = 5.6, 3.0, 1.2
+BASELINE = 2.6  # between the axes of the two chimneys
+WELL_DEPTH = 0.8
 EMITTER_RADIUS = (0.6, 0.9)  # of the chimney at its floor and at its mouth
-RECEIVER_RADIUS = (0.6, 0.8)
+RECEIVER_RADIUS = (0.7, 0.9)
 WELL_SIDES = 48
-BARRIER_WIDTH = 1.0  # the strip of the top between the two mouths
+BARRIER_WIDTH = 0.6  # the strip of the top between the two mouths
 GLASS_LENGTH, GLASS_WIDTH, GLASS_THICKNESS = 8.0, 5.0, 1.0
 GLASS_GAP = 0.2  # between the housing's top and the glass
 DIE_SIDE, DIE_HEIGHT = 0.3, 0.15

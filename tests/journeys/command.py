@@ -65,7 +65,7 @@ spectrum = { line = 555 }
 
 [[detector]]
 name   = "desk"
-plane  = { center = [0, 0, 1], normal = [0, 0, 1], across = [1, 0, 0], size = [8, 8], cells = [2,2] }
+plane  = { center = [0, 0, 1], normal = [0, 0, 1], across = [1, 0, 0], size = [8,8], cells = [2,2] }
 counts = "illuminance"
 
 [trace]

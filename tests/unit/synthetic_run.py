@@ -21,7 +21,7 @@ from lumentrace.engine.sums import (
     what_if_keys,
 )
 from lumentrace.models.events import BULK, EVENTS, SCATTER, THROUGH
-from lumentrace.photometry import luminosity_table
+from lumentrace.photometry import luminosity, luminosity_table
 from lumentrace.run.make import make_run
 from lumentrace.scene.model import Limit, Scene, Study, TraceSettings
 from lumentrace.world.arrays import (
@@ -156,9 +156,7 @@ class _Toy:
         self.source = (self.ray % BLOCK_RAYS) // (BLOCK_RAYS // 2)
         self.weight = of.arrays.sources.ray_flux[self.source]
         self.way = self.rng.choice(len(CHANCE), size=self.n, p=chance)
-        efficacy = 683.0 * np.interp(
-            of.arrays.sources.wavelength, np.arange(360, 831), of.arrays.luminosity
-        )
+        efficacy = [683.0 * luminosity(w) for w in of.arrays.sources.wavelength]
         seen = of.arrays.detectors.photometric[:, None]
         self.response = np.where(seen, efficacy, 1.0)  # (detector, source)
         self.account = np.zeros((self.n, ROWS.count))
@@ -330,7 +328,7 @@ def _row(toy, rays, w, d, s, steps, length):
         "n_steps": np.int32(len(steps)),
         "step": step,
         "run_sum": run_sum,
-        "batch": np.bincount(toy.batch[rays], w, BATCHES),
+        "batch": np.bincount(toy.batch[rays], w, BATCHES).astype(float),
         "square": (w**2).sum(),
         "count": np.int64(len(rays)),
         "optical": (w * 800.0).sum(),

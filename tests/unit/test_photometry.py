@@ -48,8 +48,7 @@ def test_table():
     assert table[0] == 3.917e-06  # 360 nm; source as above
     assert table[-1] == 4.5181e-07  # 830 nm
     assert table.argmax() == 555 - 360
-    # Source: 106.857 nm is the integral of V by the sum at 1 nm of the same table, used in the
-    # definition of colour values (value from memory, five digits).
+    # The integral of V, 106.857 nm: value from memory; all of it is the sum at 1 nm.
     assert table.sum() == pytest.approx(106.857, rel=1e-5)
     assert photometry.luminosity_table() is table
     with pytest.raises(ValueError, match="read-only"):

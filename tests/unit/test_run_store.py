@@ -208,7 +208,7 @@ def test_a_missing_variable_is_named(made, tmp_path):
 
 def test_a_missing_detector_is_named(made, tmp_path):
     def drop(tree):
-        del tree["detectors"].children["rx"]
+        del tree["detectors"]["rx"]
 
     path = altered(made, tmp_path / "bad.nc", drop)
     assert "is damaged (lacks detectors/rx)" in refused(path)

@@ -166,7 +166,7 @@ def test_what_stands_twice(text, repeated):
     assert scan(text).repeated == repeated
 
 
-@given(st.text(alphabet='ab=[]{}",.\n #\'\\1é\x00', max_size=40))
+@given(st.text(alphabet="ab=[]{}\",.\n #'\\1é\x00", max_size=40))
 @settings(max_examples=300, deadline=None, derandomize=True)
 def test_any_text_is_scanned_without_an_error(text):
     lines = scan(text).lines

@@ -1,0 +1,76 @@
+"""`check`: what a scene holds, what is doubtful; it traces and writes nothing."""
+
+import pytest
+
+from tests.journeys.command import SCENE, SCENES, answer, assert_narrow, lumentrace, ok, small_scene
+
+
+def test_check_tells_what_it_understood(tmp_path):
+    scene = small_scene(tmp_path)
+    text = ok("check", scene.name, cwd=tmp_path)
+    assert_narrow(text)
+    lines = [" ".join(line.split()) for line in text.splitlines()]
+    assert "plate.toml: A plate of glass over a floor" in lines
+    assert "2 parts, 1 source, 1 detector, 1 limit. Unit mm." in lines
+    assert "window 10 x 10 x 1 0.01 x 0.01 x 0.001 12 glass" in lines
+    assert "window:rim 8 40 16.7 % uncoated" in lines
+    assert "floor:above 2 100 41.7 % grey" in lines
+    assert "lamp 100 lm (0.1464 W) 555 isotropic 100 % index 1" in lines
+    assert "desk 2 x 2 4 x 4 illuminance, lx from the front, passes" in lines
+    assert "desk.mean at least 100 lx" in lines
+    assert lines[-1] == "Nothing wrong, 0 doubtful. Nothing was traced."
+
+
+def test_check_for_machines_holds_the_same_facts(tmp_path):
+    scene = small_scene(tmp_path)
+    found = answer("check", scene.name, cwd=tmp_path)
+    assert found["parts"]["window"]["size"] == pytest.approx([10, 10, 1])
+    assert found["parts"]["window"]["volume"] == pytest.approx(100)
+    assert found["tags"]["window:rim"]["area"] == pytest.approx(40)
+    assert found["sources"]["lamp"]["ray_share"] == 1.0
+    # 100 lm / (683 lm/W V(555 nm)), V = 1.000 from the CIE table
+    assert found["sources"]["lamp"]["flux"] == pytest.approx(100 / 683, rel=1e-3)
+    assert found["detectors"]["desk"]["cells"] == [2, 2]
+    assert found["limits"] == [
+        {"measure": "desk.mean", "at_least": 100.0, "at_most": None, "note": ""}
+    ]
+    assert sorted(p.name for p in tmp_path.iterdir()) == ["plate.obj", "plate.toml"]
+
+
+def test_parts_that_touch_are_listed_with_what_was_taken(tmp_path):
+    scene = small_scene(tmp_path)
+    scene.write_text(SCENE.replace("at     = [0, 0, 10]", "at     = [0, 0, 0]"), encoding="utf-8")
+    contact = answer("check", scene.name, cwd=tmp_path)["contacts"]
+    assert [c["parts"] for c in contact] == [["window", "floor"]]
+    assert contact[0]["area"] == pytest.approx(100)
+    assert contact[0]["taken"] == "dry"
+
+
+def test_doubtful_and_told_lines_leave_the_exit_status_at_zero(tmp_path):
+    scene = small_scene(tmp_path)
+    scene.write_text(SCENE.replace("555", "940").replace("lumens", "watts"), encoding="utf-8")
+    text = ok("check", scene.name, cwd=tmp_path)
+    assert "\ndoubtful: plate.toml:36: detector.desk.counts: no source gives visible" in text
+    assert text.endswith("Nothing wrong, 1 doubtful. Nothing was traced.\n")
+
+
+@pytest.mark.parametrize("name", ["bench_lamp", "range_finder"])
+def test_the_scenes_of_the_project_are_without_doubt(name):
+    text = ok("check", SCENES / name / f"{name}.toml")
+    assert_narrow(text)
+    assert text.endswith("Nothing wrong, 0 doubtful. Nothing was traced.\n")
+
+
+def test_long_names_keep_within_the_terminal(tmp_path):
+    scene = small_scene(tmp_path)
+    name = "window_with_a_name_that_is_quite_long_even_for_a_part_of_a_cad_export_of_2026"
+    scene.write_text(SCENE.replace("window", name), encoding="utf-8")
+    assert_narrow(ok("check", scene.name, cwd=tmp_path))
+
+
+def test_schema_accepts_what_the_reader_accepts_and_knows_no_later_word():
+    schema = answer("schema")
+    assert schema["properties"].keys() == {
+        "study", "medium", "finish", "part", "source", "detector", "trace", "limit",
+    }  # fmt: skip
+    assert lumentrace("schema").stdout == lumentrace("schema", "--json").stdout
