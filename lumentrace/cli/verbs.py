@@ -14,7 +14,9 @@ from lumentrace.cli.words import (
     top_option,
     tracing_options,
 )
-from lumentrace.errors import nearest
+from lumentrace.errors import UserError, nearest
+
+PICTURES = ("pyvista", "vtk", "matplotlib")  # what only the extra of that name installs
 
 
 class Verbs(click.Group):
@@ -142,10 +144,11 @@ def ledger(subject, detector, top, as_json):
 @top_option("Paths to draw, strongest first; 6 where left out.")
 @json_option()
 def draw(subject, detector, top, as_json):
-    """Draw pictures of a run beside it: the parts with the strongest paths to a detector, and the
-    detector's map, as PNG files.
+    """Draw pictures of a run beside it, as PNG files: the parts with the
+    strongest paths to a detector, and the detector's map.
 
-    Takes the newest run of a scene, or a run's file. Needs the extra `pictures`."""
+    Takes the newest run of a scene, or a run's file. Needs the extra
+    `pictures`."""
     from lumentrace import study
     from lumentrace.report.lines import shown_path
 
@@ -154,13 +157,26 @@ def draw(subject, detector, top, as_json):
         found = study.find_run(subject)
         world = study.world_of(found)
         bar.stage("Drawing")
-        from lumentrace_viz.draw import draw_run
-
-        files = draw_run(found.run, world, found.path.parent, detector=detector, paths=top)
+        files = _draw(found, world, detector, top)
     if as_json:
         show_json({"file": str(found.path), "pictures": [str(file) for file in files]})
     else:
         show("\n".join(f"Written: {shown_path(file)}" for file in files))
+
+
+def _draw(found, world, detector, top):
+    """Draw, or say which extra is not installed."""
+    try:
+        from lumentrace_viz.draw import draw_run
+
+        return draw_run(found.run, world, found.path.parent, detector=detector, paths=top)
+    except ModuleNotFoundError as error:
+        if error.name not in PICTURES:
+            raise
+        raise UserError(
+            f"draw needs {error.name}, which is not installed; where pyproject.toml lies, type: "
+            'pip install ".[pictures]"'
+        ) from error
 
 
 @lumentrace.command(

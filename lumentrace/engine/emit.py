@@ -119,12 +119,9 @@ def find_inside(world, ray, hits):
 
 @kernel
 def starts_in_gap(world, ray, hits):
-    """Whether the nearest hit of a fresh ray is a clear face that its own face lies dry on."""
+    """Whether the nearest hit of a fresh ray is a face that its own face lies dry on."""
     row = find_pair(world.mesh, ray.face[0], hits.prim[0])
-    if row < 0 or world.mesh.pair_kind[row] != DRY:
+    if row < 0 or world.mesh.pair_kind[row] != DRY or hits.owner[0] < 0:
         return False
-    if hits.owner[0] < 0 or world.bodies.kind[hits.owner[0]] != TRANSPARENT:
-        return False
-    direction = take(ray.direction, 0)
-    cosine = abs(cosine_of(world.mesh, world.detectors, hits.prim[0], direction))
+    cosine = abs(cosine_of(world.mesh, world.detectors, hits.prim[0], take(ray.direction, 0)))
     return hits.t[0] <= hits.reach[0] + world.mesh.pair_gap[row] / cosine

@@ -229,7 +229,8 @@ def act_in_gap(world, rows, ray, b, tally, factor):
     """One event in a dry gap, or at its clear face from inside; False where the ray ends.
 
     The clear face and the opaque one or sheet lie in one place, with air between. Light in the gap
-    meets the one that it goes toward, until it leaves by one of them.
+    meets the one that it goes toward, until it leaves by one of them. (Light that is emitted into
+    the gap of two opaque faces stays there.)
     """
     mesh, bodies = world.mesh, world.bodies
     clear, cover = ray.clear[b], ray.cover[b]
@@ -240,7 +241,9 @@ def act_in_gap(world, rows, ray, b, tally, factor):
     face = clear if at_clear else cover
     front = cosine_of(mesh, world.detectors, face, direction) < 0.0
     n_air = index_of(world.media, AIR)
-    n_clear = index_of(world.media, medium_of(bodies, body))
+    n_clear = n_air
+    if bodies.kind[body] == TRANSPARENT:
+        n_clear = index_of(world.media, medium_of(bodies, body))
     n1 = n_clear if inside else n_air
     n2 = (n_air if inside else n_clear) if at_clear else n_air
     side = act(world, rows, ray, b, tally, face, finish_of(world.tags, mesh.tag[face], front), n1, n2, factor)

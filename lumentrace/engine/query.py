@@ -96,9 +96,10 @@ def _widest_gap(mesh, prim):
 def _start(mesh, leaving, prim, t, cosine, reach):
     """Distance at which a ray that leaves a face meets a primitive, or inf where it does not.
 
-    Ahead is ahead, but what is in contact with the face belongs to the event that is over. What
-    lies behind by no more than the error of its distance is met here if it is of the same body and
-    the ray comes to it on the side on which it left: it stands at a concave edge.
+    Ahead is ahead, but what is in contact with the face belongs to the event that is over. A closed
+    body is met next on the side on which the ray left it; by rounding, a ray that just clears a
+    convex edge seems to come to the face behind it from within. A face of the same body that lies
+    behind by no more than the error of its distance stands at a concave edge, and is met here.
     """
     if leaving.face < 0:
         return t if t > 0.0 else inf
@@ -106,10 +107,13 @@ def _start(mesh, leaving, prim, t, cosine, reach):
     if row >= 0 and abs(t) <= reach + mesh.pair_gap[row] / abs(cosine):
         faces_the_start = leaving.fresh and mesh.pair_kind[row] == DRY and cosine < 0.0
         return max(t, 0.0) if faces_the_start else inf
+    body = mesh.body[leaving.face]
+    if prim >= len(mesh.body) or mesh.body[prim] != body:
+        return t if t > 0.0 else inf
+    same_side = cosine * leaving.side < 0.0
     if t > 0.0:
-        return t
-    same = prim < len(mesh.body) and mesh.body[prim] == mesh.body[leaving.face]
-    return 0.0 if same and t >= -reach and cosine * leaving.side < 0.0 else inf
+        return t if same_side or not mesh.closed[body] else inf
+    return 0.0 if same_side and t >= -reach else inf
 
 
 @kernel

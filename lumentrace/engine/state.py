@@ -34,8 +34,8 @@ class Ray(NamedTuple):
     fresh: np.ndarray  # (BRANCHES,) bool: it has just been emitted by that face
     skipped: np.ndarray  # (BRANCHES, HITS_MAX) int32 other primitives of the last event
     n_skipped: np.ndarray  # (BRANCHES,) int32
-    clear: np.ndarray  # (BRANCHES,) int32 transparent face of the dry gap that it is in, -1: none
-    cover: np.ndarray  # (BRANCHES,) int32 opaque face or sheet on the gap's other side
+    clear: np.ndarray  # (BRANCHES,) int32 face of the dry gap that it is in, the clear one if any, -1: no gap
+    cover: np.ndarray  # (BRANCHES,) int32 face on the gap's other side: opaque, or of a sheet
     step: np.ndarray  # (BRANCHES, STEPS_MAX) int64 tag << 4 | event, runs collapsed
     run: np.ndarray  # (BRANCHES, STEPS_MAX) int32 length of each step's run
     n_steps: np.ndarray  # (BRANCHES,) int32; more than STEPS_MAX: the path is too long to keep

@@ -1,9 +1,12 @@
 """Aligned columns of plain text, at most so wide."""
 
+import re
 import textwrap
 from collections.abc import Sequence
 
 WIDTH = 80
+_NO_BREAK = "\u00a0"
+_BETWEEN_DIGITS = re.compile(r"(?<=\d) (?=\d{3}\b)")  # 65 536 is one word
 GAP = 2
 
 
@@ -32,7 +35,9 @@ def lay_out(
 
 def wrap(text: str, width: int = WIDTH, indent: str = "  ") -> list[str]:
     """Break at spaces, and inside a word only where it must; further lines are indented."""
-    return textwrap.wrap(text, width, subsequent_indent=indent, break_on_hyphens=False) or [""]
+    whole = _BETWEEN_DIGITS.sub(_NO_BREAK, text)
+    lines = textwrap.wrap(whole, width, subsequent_indent=indent, break_on_hyphens=False)
+    return [line.replace(_NO_BREAK, " ") for line in lines] or [""]
 
 
 def _line(row, wrapped: str, align: str, widths: list[int], elastic: int) -> str:

@@ -25,9 +25,10 @@ class Mesh(NamedTuple):
     normal: np.ndarray  # (F, 3) float64 unit outward normal; zeros: no area, never hit
     error: np.ndarray  # (F,) float64 bound on the distance of a computed hit from the true plane
     margin: np.ndarray  # (F,) float64 weight of a corner below which a hit is drawn back into its
-    #   triangle: min(0.25, 64 * 32 * 2**-52 * M / smallest altitude), M the scene's largest coordinate
+    #   triangle: min(0.25, 64 * 32 * 2**-52 * M / smallest altitude), M the largest coordinate
     body: np.ndarray  # (F,) int32
     tag: np.ndarray  # (F,) int32 row of Tags
+    closed: np.ndarray  # (B,) bool: the body's surface has no open edge
     pair_first: np.ndarray  # (F + D + 1,) int32 primitives in contact with this one: faces of other
     #   bodies, and detectors that lie on a face; primitive F + d is detector d
     pair_prim: np.ndarray  # (P,) int32; both directions are listed

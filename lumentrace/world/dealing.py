@@ -23,7 +23,7 @@ def deal_rays(flux: Sequence[float], group: Sequence[int], share: Sequence[float
         raise UserError(f"{n} sources are in use; allowed: {BLOCK_RAYS}")
     if n == 0:
         return np.empty(0, np.int64)
-    flux = np.asarray(flux, np.float64)
+    flux, group = np.asarray(flux, np.float64), np.asarray(group, np.int64)
     claim = flux / np.bincount(group, weights=flux)[group] * np.asarray(share, np.float64)
     rays = np.ones(n, np.int64)
     sharing = np.ones(n, bool)

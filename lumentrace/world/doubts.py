@@ -84,7 +84,7 @@ def detector_doubts(
 
     place, half: of `frames.detector_frame`.
     """
-    rim = corners(place, half)
+    rim = corners(place, half - 2 * distance)  # so that a face along the rim is not met
     lower, upper = face_boxes(mesh.vertex, mesh.corner)
     meets = (upper >= rim.min(axis=0) - distance) & (lower <= rim.max(axis=0) + distance)
     faces = np.flatnonzero(meets.all(axis=1))

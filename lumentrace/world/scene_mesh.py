@@ -129,8 +129,8 @@ def _on_detectors(face, detector, gap, n_detectors):
     return keys // max(n_detectors, 1), keys % max(n_detectors, 1), largest_gap
 
 
-def mesh_arrays(whole: Joined, table, size: float) -> Mesh:
-    """The mesh as the engine wants it. size: largest coordinate of the scene."""
+def mesh_arrays(whole: Joined, closed, table, size: float) -> Mesh:
+    """The mesh as the engine wants it. closed: (B,); size: largest coordinate of the scene."""
     first, prim, gap, kind = table
     return Mesh(
         vertex=whole.vertex,
@@ -140,6 +140,7 @@ def mesh_arrays(whole: Joined, table, size: float) -> Mesh:
         margin=edge_margin(size, whole.facets.altitude),
         body=whole.body.astype(np.int32),
         tag=whole.tag.astype(np.int32),
+        closed=closed,
         pair_first=first,
         pair_prim=prim,
         pair_gap=gap,

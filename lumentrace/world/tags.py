@@ -64,7 +64,7 @@ def _own(part: Part, rule: TagRule, pick: Pick, mesh: PartMesh):
             "pick",
             f'"{part.mesh.name}" has no tag "{pick.tag}"; {nearest(name, mesh.tag_names)}',
         )
-    return mesh.tag[:, None] == [mesh.tag_names.index(name)]
+    return mesh.tag == mesh.tag_names.index(name)
 
 
 def _why_none(rule: TagRule, mesh: PartMesh, chosen, row, names):

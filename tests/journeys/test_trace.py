@@ -158,12 +158,11 @@ def test_ctrl_c_stops_the_trace_and_leaves_nothing(tmp_path):
         command, cwd=tmp_path, stdout=subprocess.PIPE, stderr=terminal, text=True
     ) as traced:
         os.close(terminal)
-        shown = b""
-        while b"M rays" not in shown:
-            shown += os.read(screen, 4096)
+        before = _read(screen, until=b"M rays")
         traced.send_signal(signal.SIGINT)
-        shown += _rest(screen)
+        shown = _read(screen)
         out = traced.stdout.read()
+    assert b"M rays" in before, before
     assert traced.returncode == 130
     assert out == ""
     assert b"Stopped. Nothing was written." in shown
@@ -172,11 +171,12 @@ def test_ctrl_c_stops_the_trace_and_leaves_nothing(tmp_path):
     assert sorted(p.name for p in tmp_path.iterdir()) == ["plate.obj", "plate.toml"]
 
 
-def _rest(screen: int) -> bytes:
-    """All that is still written to a pseudo-terminal."""
-    rest = b""
-    while True:
+def _read(screen: int, until: bytes | None = None) -> bytes:
+    """What is written to a pseudo-terminal up to some text, or to its end."""
+    shown = b""
+    while until is None or until not in shown:
         try:
-            rest += os.read(screen, 4096)
+            shown += os.read(screen, 4096)
         except OSError:  # how Linux says that the other end is closed
-            return rest
+            break
+    return shown

@@ -1,6 +1,6 @@
 """Tables are aligned, and no line is wider than asked."""
 
-from lumentrace.report.table import lay_out
+from lumentrace.report.table import lay_out, wrap
 
 
 def test_columns_are_aligned_by_their_widest_cell():
@@ -29,3 +29,8 @@ def test_name_without_a_space_is_broken():
 
 def test_no_rows_give_no_lines():
     assert lay_out([], "<>") == []
+
+
+def test_wrapped_text_keeps_grouped_digits_together():
+    assert wrap("rounds of 65 536 rays", 14) == ["rounds of", "  65 536 rays"]
+    assert wrap("", 14) == [""]

@@ -71,8 +71,8 @@ def test_bodies_come_in_the_order_of_the_file_copies_together(tmp_path):
     cube = box((0, 0, 0), (1, 1, 1))
     white = {"medium": "opaque", "finish": "white"}
     study.part("die", cube, **white, repeat={"count": [3, 2, 1], "step": [5, 7, 0]}, length="cm")
-    study.part("wheel", cube, **white, at=[0, 0, 300],
-               repeat={"count": 2, "axis": [0, 0, 1], "degrees": 180, "center": [2, 0, 0]})  # fmt: skip
+    half_turn = {"count": 2, "axis": [0, 0, 1], "degrees": 180, "center": [2, 0, 0]}
+    study.part("wheel", cube, **white, at=[0, 0, 300], repeat=half_turn)
     study.part("gone", cube, **white, use=False)
     world = built(study)
     assert world.body_names[:3] == ("die (1)", "die (2)", "die (3)")
