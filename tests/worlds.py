@@ -220,7 +220,7 @@ class Result:
 
     def bulk(self, part: str) -> Estimate:
         """W absorbed in the medium of a part."""
-        return of_batches(self.run.account["bulk"].sel(part=part).sum("group"))
+        return of_batches(self.run.account["bulk"].sel(volume=part).sum("group"))
 
     def fate(self, name: str) -> Estimate:
         """W that "escaped", "cut_off", ..."""

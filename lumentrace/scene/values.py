@@ -110,7 +110,7 @@ NotNegative = Annotated[float, Field(**_REAL, ge=0, le=FARTHEST)]
 Share = Annotated[float, Field(**_REAL, ge=0, le=1)]
 _BAND = {"minimum": SHORTEST_NM, "maximum": LONGEST_NM}
 Wavelength = Annotated[float, Field(**_REAL, json_schema_extra=_BAND), AfterValidator(_wavelength)]
-Count = whole(1, 10**12)
+Count = whole(1, 10**15)
 EventCount = whole(1, 2**31 - 1)
 Seed = whole(0, 2**63 - 1)
 Priority = whole(-(10**9), 10**9)

@@ -11,9 +11,10 @@ from lumentrace.world.bodies import Body, BuiltPart
 from lumentrace.world.boxes import box_pairs
 from lumentrace.world.crossing import pierced
 from lumentrace.world.frames import corners
-from lumentrace.world.geometry import face_boxes, shown_point
+from lumentrace.world.geometry import face_boxes
 from lumentrace.world.materials import AIR, tag_finish
 from lumentrace.world.start_media import StartMedium, shown
+from lumentrace.world.words import counted, shown_point
 
 _IN_A_ROW = 3  # transparent bodies, one behind the other, from which a stack is suspected
 _FLAT = 1.5  # times its smallest extent: no more than that is how deep a plate is along a stack
@@ -140,7 +141,7 @@ def rounding_doubts(parts: Sequence[BuiltPart], bodies: Sequence[Body], altitude
         lost &= built.mesh.facets.altitude > 0
         if lost.any() and body.part not in notices:
             notices[body.part] = _doubtful(
-                f"part {body.name} stands so far from the origin that {lost.sum()} of its faces "
-                "are smaller than rounding there and are never hit"
+                f"part {body.name} stands so far from the origin that rounding there swallows "
+                f"{counted(lost.sum(), 'face')}: never hit"
             )
     return list(notices.values())

@@ -85,8 +85,3 @@ def file_rounding(vertex) -> float:
     than its corners, and two faces by twice as much: less than 4 x 2^-24.
     """
     return 2.0**-22 * largest(vertex)
-
-
-def shown_point(point) -> str:
-    """A point as messages name it: ``(1.5, 0, -2)``."""
-    return "(" + ", ".join(f"{x:.6g}" for x in np.asarray(point) + 0.0) + ")"

@@ -2,6 +2,7 @@
 
 import difflib
 import hashlib
+from collections import Counter
 from dataclasses import dataclass
 
 import numpy as np
@@ -9,11 +10,12 @@ import numpy as np
 from lumentrace.errors import Notice, nearest
 from lumentrace.scene.model import BULK, DEFAULT, Part
 from lumentrace.scene.names import name_from_mesh
-from lumentrace.world.geometry import Facets, facets, largest, shown_point
+from lumentrace.world.geometry import Facets, facets, largest
 from lumentrace.world.obj import read_obj
 from lumentrace.world.raw import Labels, MeshFault, RawMesh
 from lumentrace.world.stl import read_stl
 from lumentrace.world.surface import mesh_fault, mesh_told, wound
+from lumentrace.world.words import counted, shown_point
 
 READERS = {".stl": read_stl, ".obj": read_obj}
 _POINTER = b"version https://git-lfs"
@@ -82,12 +84,12 @@ def part_mesh(part: Part, file: MeshFile) -> tuple[PartMesh, list[Notice]]:
     if not len(raw.corner):
         raise mesh_fault(part, "holds no face")
     _check_coordinates(part, raw)
-    names, rows = _own_tags(part, raw.tags, notices)
     chosen = _taken(part, raw)
+    names, rows = _own_tags(part, raw.tags, chosen, notices)
     vertex, corner, kept = _welded(part, raw, chosen, notices)
     shape = facets(vertex, corner, largest(vertex))
     if not (shape.area > 0).any():
-        raise mesh_fault(part, f"has no face with an area, of {len(raw.corner)}")
+        raise mesh_fault(part, f"has no face with an area, of {chosen.sum()}")
     _tell_slivers(part, vertex, corner, shape, notices)
     corner, closed = wound(part, vertex, corner, notices)
     mesh = PartMesh(
@@ -120,33 +122,35 @@ def _check_coordinates(part, raw):
             face = f" of face {np.flatnonzero(used)[0] + 1}" if used.any() else ""
             raise mesh_fault(
                 part,
-                f"has {len(rows)} corners with coordinates {what}, the first{face} at "
+                f"has {counted(len(rows), 'corner')} with coordinates {what}, the first{face} at "
                 f"{shown_point(raw.vertex[rows[0]])}; export it again",
             )
 
 
-def _own_tags(part, tags: Labels, notices):
-    """(names, rows): the file's own tags under names that a scene file can say."""
-    clean = [tag_name(name) for name in tags.names]
+def _own_tags(part, tags: Labels, chosen, notices):
+    """(names, rows): the file's own tags of the chosen faces, under names that a scene can say.
+
+    rows: (F,) int64 of names; without a meaning for faces that are not chosen.
+    """
+    used = np.unique(tags.row[chosen])
+    old = [tags.names[row] for row in used]
+    clean = [tag_name(name) for name in old]
     names = tuple(dict.fromkeys(clean))
-    changed = [
-        f'"{old}" is called {new}'
-        for old, new in zip(tags.names, clean, strict=True)
-        if old not in ("", new)
-    ]
+    pairs = [(was, now) for was, now in zip(old, clean, strict=True) if was]
+    changed = [f'"{was}" is called {now}' for was, now in pairs if was != now]
     if changed:
         more = f", and {len(changed) - 4} more" if len(changed) > 4 else ""
         notices.append(
             mesh_told(part, f"names faces that need another name: {', '.join(changed[:4])}{more}")
         )
-    merged = [
-        n for n in names if sum(c == n for c, old in zip(clean, tags.names, strict=True) if old) > 1
-    ]
+    count = Counter(now for _, now in pairs)
+    merged = [name for name in names if count[name] > 1]
     if merged:
         notices.append(
             mesh_told(part, f"has several names that become one tag: {', '.join(merged)}")
         )
-    row_of = np.array([names.index(name) for name in clean], np.int64)
+    row_of = np.full(len(tags.names), -1, np.int64)
+    row_of[used] = [names.index(name) for name in clean]
     return names, row_of[tags.row]
 
 
@@ -184,7 +188,9 @@ def _welded(part, raw, chosen, notices):
     same[order] = np.cumsum(new) - 1
     repeated = len(order) - int(new.sum())
     if repeated and not raw.repeats:
-        notices.append(mesh_told(part, f"repeats {repeated} vertices: welded"))
+        notices.append(
+            mesh_told(part, f"repeats {counted(repeated, 'vertex', 'vertices')}: welded")
+        )
     corner = same[corner.reshape(-1, 3)]
     flat = (corner == np.roll(corner, 1, axis=1)).any(axis=1)
     if flat.any():
@@ -192,7 +198,8 @@ def _welded(part, raw, chosen, notices):
         notices.append(
             mesh_told(
                 part,
-                f"has {flat.sum()} faces with two equal corners, the first at {place}: dropped",
+                f"has {counted(flat.sum(), 'face')} with two equal corners, the first at {place}: "
+                "dropped",
             )
         )
         corner, rows = corner[~flat], rows[~flat]
@@ -206,6 +213,8 @@ def _tell_slivers(part, vertex, corner, shape, notices):
         place = shown_point(vertex[corner[slivers[0]]].mean(axis=0))
         notices.append(
             mesh_told(
-                part, f"has {len(slivers)} slivers without area, the first at {place}: never hit"
+                part,
+                f"has {counted(len(slivers), 'sliver')} without area, the first at {place}: never "
+                "hit",
             )
         )

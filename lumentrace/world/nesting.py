@@ -9,9 +9,9 @@ from lumentrace.world import arrays
 from lumentrace.world.bodies import Body, BuiltPart
 from lumentrace.world.boxes import box_pairs
 from lumentrace.world.crossing import surfaces_cross
-from lumentrace.world.geometry import shown_point
 from lumentrace.world.inside import is_inside
 from lumentrace.world.topology import shell_faces
+from lumentrace.world.words import shown_point
 
 
 def ranks(parts: Sequence[BuiltPart], bodies: Sequence[Body], touch):

@@ -4,6 +4,7 @@ import numpy as np
 
 from lumentrace.world.polygons import fanned
 from lumentrace.world.raw import MeshFault, Namer, RawMesh
+from lumentrace.world.words import counted
 
 _LABELS = {"usemtl": 0, "g": 1, "o": 2}  # in this order the first that is there gives the tags
 
@@ -93,7 +94,7 @@ def _check_range(corners, lines, count):
     wrong = [row for row, polygon in enumerate(corners) if max(polygon) >= count]
     if wrong:
         raise MeshFault(
-            f"has {len(wrong)} faces with vertices that are not there, the first at line "
-            f"{lines[wrong[0]]}: vertex {max(corners[wrong[0]]) + 1} of {count}; the file may be "
-            "cut short"
+            f"has {counted(len(wrong), 'face')} with vertices that are not there, the first at "
+            f"line {lines[wrong[0]]}: vertex {max(corners[wrong[0]]) + 1} of {count}; the file may "
+            "be cut short"
         )

@@ -3,6 +3,7 @@
 import numpy as np
 
 from lumentrace.world.raw import MeshFault
+from lumentrace.world.words import counted
 
 _TIE = 1e-9  # fans whose worst triangles differ by less count as equally good
 _FOLDED = -1e-6  # share of the polygon's area by which a triangle may lie the wrong way round
@@ -26,8 +27,8 @@ def fanned(vertex, corners, lines):
         if worst is not None and (worst < _FOLDED).any():
             bad = np.flatnonzero(worst < _FOLDED)
             raise MeshFault(
-                f"has {len(bad)} polygons dented so that no fan of triangles fills them, the first "
-                f"at line {lines[rows[bad[0]]]}; export triangles"
+                f"has {counted(len(bad), 'polygon')} dented so that no fan of triangles fills "
+                f"them, the first at line {lines[rows[bad[0]]]}; export triangles"
             )
         turned = np.take_along_axis(ring, (start[:, None] + np.arange(size)) % size, axis=1)
         for k in range(size - 2):

@@ -88,9 +88,8 @@ def touching(
     kind = kinds(parts, part_a, part_b, pairs.opposed[between])
     refuse_two_finishes(scene, parts, whole.tag[a], whole.tag[b], kind)
     facts = contact_facts(parts, part_a, part_b, kind, pairs.area[between], pairs.gap[between])
-    plane = ~between & (pairs.a < n_faces)
     on, detector, gap = _on_detectors(
-        pairs.a[plane], (pairs.b[plane] - n_faces) // 2, pairs.gap[plane], n_detectors
+        pairs.a[~between], (pairs.b[~between] - n_faces) // 2, pairs.gap[~between], n_detectors
     )
     table = pair_table(
         n_faces + n_detectors,

@@ -4,7 +4,7 @@ from lumentrace.errors import Notice, UserError
 from lumentrace.scene.model import OPAQUE, SHEET, Part
 from lumentrace.world.boxes import box_pairs
 from lumentrace.world.crossing import is_star, self_crossings, surfaces_cross
-from lumentrace.world.geometry import file_rounding, shown_point
+from lumentrace.world.geometry import file_rounding
 from lumentrace.world.topology import (
     edges_of,
     inside_out,
@@ -14,6 +14,7 @@ from lumentrace.world.topology import (
     to_reverse,
     unbalanced,
 )
+from lumentrace.world.words import counted, shown_point
 
 
 def mesh_fault(part: Part, text: str) -> UserError:
@@ -40,7 +41,9 @@ def wound(part: Part, vertex, corner, notices: list[Notice]):
         return corner, not unbalanced(edges_of(corner)).any()
     if turn.any():
         notices.append(
-            mesh_told(part, f"has {turn.sum()} faces wound against their neighbours: turned")
+            mesh_told(
+                part, f"has {counted(turn.sum(), 'face')} wound against the neighbours: turned"
+            )
         )
         corner = reverse(corner, turn)
     edges = edges_of(corner)
@@ -50,7 +53,10 @@ def wound(part: Part, vertex, corner, notices: list[Notice]):
     if is_open.any():
         at = shown_point(vertex[edges.ends[is_open][0]].mean(axis=0))
         notices.append(
-            mesh_told(part, f"is open at {is_open.sum()} edges, the first at {at}: used as it is")
+            mesh_told(
+                part,
+                f"is open at {counted(is_open.sum(), 'edge')}, the first at {at}: used as it is",
+            )
         )
     elif part.flip:
         raise part.place.error(
@@ -79,7 +85,9 @@ def _outward(part, vertex, corner, notices):
         notices.append(mesh_told(part, "is inside out: turned"))
     elif wrong.any():
         notices.append(
-            mesh_told(part, f"has closed surfaces of {wrong.sum()} faces inside out: turned")
+            mesh_told(
+                part, f"has closed surfaces of {counted(wrong.sum(), 'face')} inside out: turned"
+            )
         )
     return reverse(corner, wrong)
 
@@ -88,15 +96,16 @@ def _require_solid(part, vertex, edges, is_open, two_sided):
     """Refuses a surface that does not tell inside from outside."""
     crowded = edges.count > 2
     for wrong, text in (
-        (is_open & ~crowded, "is open: {n} edges have a face on one side only"),
-        (crowded, "has {n} edges with more than two faces"),
+        (is_open & ~crowded, "is open: {n} with a face on one side only"),
+        (crowded, "has {n} with more than two faces"),
     ):
         if wrong.any():
             at = shown_point(vertex[edges.ends[wrong][0]].mean(axis=0))
             raise mesh_fault(
                 part,
-                f"{text.format(n=wrong.sum())}, the first at {at}; a medium ({part.medium}) needs "
-                'a closed surface: mend it in CAD, or make the part "opaque" or a "sheet"',
+                f"{text.format(n=counted(wrong.sum(), 'edge'))}, the first at {at}; a medium "
+                f"({part.medium}) needs a closed surface: mend it in CAD, or make the part "
+                '"opaque" or a "sheet"',
             )
     if not two_sided:
         raise mesh_fault(part, f"has one side only; a medium ({part.medium}) needs an inside")
@@ -115,8 +124,8 @@ def _refuse_crossing(part, vertex, corner):
         at = shown_point(points[0])
         raise mesh_fault(
             part,
-            f"crosses itself in {len(points)} places, the first at {at}; a medium ({part.medium}) "
-            " needs a surface that does not: unite the bodies in CAD",
+            f"crosses itself in {counted(len(points), 'place')}, the first at {at}; a medium "
+            f"({part.medium}) needs a surface that does not: unite the bodies in CAD",
         )
 
 

@@ -41,7 +41,7 @@ HUGE = binary_stl(CUBE._replace(vertex=CUBE.vertex * 1e13))
         ("# nothing\n", "a.obj", "holds no face"),
         (HUGE, "a.stl", "has 36 corners with coordinates beyond 1e+12, the first of face 1 at ("),
         ("v 0 0 0\nv nan 0 0\nv 0 1 0\nf 1 2 3\n", "a.obj", "the first of face 1 at (nan, 0, 0)"),
-        ("v 0 0 0\nv inf 0 0\nv 0 1 0\nf 1 2 3\n", "a.obj", "has 1 corners with coordinates that"),
+        ("v 0 0 0\nv inf 0 0\nv 0 1 0\nf 1 2 3\n", "a.obj", "has 1 corner with coordinates that"),
         ("v 0 0 0\nv 1 0 0\nv 2 0 0\nf 1 2 3\n", "a.obj", "has no face with an area, of 1"),
         ("v 0 0 0\nv 1 0 0\nv 1 0 0\nf 1 2 3\n", "a.obj", "has no face with an area, of 1"),
         ("v 0 0 0\nf 1 2 3\n", "a.obj", "vertex 3 of 1; the file may be cut short"),
@@ -75,8 +75,8 @@ def test_a_missing_file_is_refused_with_the_nearest_name(study):
 @pytest.mark.parametrize(
     ("mesh", "message"),
     [
-        (without(CUBE, 0), "is open: 3 edges have a face on one side only, the first at ("),
-        (joined(CUBE, box((1, 1, -1), (2, 2, 1))), "has 1 edges with more than two faces"),
+        (without(CUBE, 0), "is open: 3 edges with a face on one side only, the first at ("),
+        (joined(CUBE, box((1, 1, -1), (2, 2, 1))), "has 1 edge with more than two faces"),
         (joined(CUBE, box((0, 0, 0), (3, 3, 3))), "crosses itself in "),
         (joined(CUBE, box((0, -1, -1), (2, 1, 1))), "crosses itself in "),
     ],
@@ -131,9 +131,7 @@ def test_inside_out_is_turned_and_told(study, medium):
 def test_faces_wound_against_their_neighbours_are_turned_and_told(study):
     study.part("cover", turned(CUBE, 3, 7), medium="clear")
     world = built(study)
-    assert told(world) == [
-        "part cover: cover.obj has 2 faces wound against their neighbours: turned"
-    ]
+    assert told(world) == ["part cover: cover.obj has 2 faces wound against the neighbours: turned"]
     assert world.parts[0].volume == pytest.approx(8.0)
 
 
@@ -189,9 +187,7 @@ def test_faces_with_equal_corners_are_dropped_and_told(study):
     study.part("cover", mesh, medium="clear")
     world = built(study)
     assert len(world.arrays.mesh.corner) == 12
-    assert (
-        "has 1 faces with two equal corners, the first at (-1, -1, -1): dropped" in told(world)[0]
-    )
+    assert "has 1 face with two equal corners, the first at (-1, -1, -1): dropped" in told(world)[0]
 
 
 def sliver_cube() -> Mesh:
@@ -212,7 +208,7 @@ def sliver_cube() -> Mesh:
 def test_slivers_are_kept_for_closedness_and_never_hit(study):
     study.part("cover", sliver_cube(), medium="clear", turn={"axis": [1, 2, 3], "degrees": 17})
     world = built(study)
-    assert "has 1 slivers without area" in told(world)[0] and "never hit" in told(world)[0]
+    assert "has 1 sliver without area" in told(world)[0] and "never hit" in told(world)[0]
     mesh = world.arrays.mesh
     assert len(mesh.corner) == 14 and world.parts[0].closed
     flat = ~mesh.normal.any(axis=1)

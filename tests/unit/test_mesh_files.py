@@ -101,7 +101,7 @@ def test_obj_materials_win_over_groups_and_groups_over_objects():
     [
         (
             "f 1 2 9",
-            "has 1 faces with vertices that are not there, the first at line 5: vertex 9 of",
+            "has 1 face with vertices that are not there, the first at line 5: vertex 9 of",
         ),
         ("f 1 2 0", "line 5: a face uses vertex 0"),
         ("f 1 2 -5", "line 5: a face uses vertex -5"),
@@ -159,5 +159,34 @@ def test_a_polygon_that_no_fan_fills_is_refused():
     ]
     text = "".join(f"v {x} {y} 0\n" for x, y in comb)
     text += "f " + " ".join(str(i + 1) for i in range(len(comb)))
-    with pytest.raises(MeshFault, match="has 1 polygons dented .* at line 13"):
+    with pytest.raises(MeshFault, match="has 1 polygon dented .* at line 13"):
         read_obj(text.encode())
+
+
+KEYWORDS = ("solid", "endsolid", "facet", "outer", "vertex", "endloop", "endfacet", "usemtl")
+NUMBERS = ("0", "1", "2", "3", "-1", "1e999", "nan", "1/2", "4//1")
+WORDS = st.sampled_from([*KEYWORDS, "v", "f", "g", "o", *NUMBERS, "\\", "#", "x", *["\n"] * 8])
+
+
+@given(
+    st.lists(WORDS, max_size=60), st.sampled_from(["", "solid a\n", "v 0 0 0\nv 1 0 0\nv 0 1 0\n"])
+)
+def test_no_text_makes_a_reader_fail_in_another_way(words, head):
+    data = (head + " ".join(words)).encode()
+    for reader in (read_stl, read_obj):
+        try:
+            raw = reader(data)
+        except MeshFault as fault:
+            assert "\n" not in str(fault)
+        else:
+            assert raw.corner.shape[1] == 3 and raw.corner.max(initial=-1) < len(raw.vertex)
+            assert len(raw.tags.row) == len(raw.corner)
+
+
+@given(st.binary(max_size=400))
+def test_no_bytes_make_a_reader_fail_in_another_way(data):
+    for reader in (read_stl, read_obj):
+        try:
+            reader(data)
+        except MeshFault as fault:
+            assert str(fault)
