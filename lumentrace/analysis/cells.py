@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from lumentrace.analysis.samples import largest
+from lumentrace.analysis.samples import Largest, largest_in_cell
 from lumentrace.analysis.statistics import jackknife, odd
 from lumentrace.run.estimate import standard_error
 from lumentrace.run.run import Run
@@ -27,7 +27,7 @@ class Cells:
     effective: np.ndarray
     mean_batch: np.ndarray  # (64,) or (32,) mean over the detector in each batch
     blocks: int
-    largest: float | None  # proven bound on what one ray adds to a cell in its block
+    largest: Largest  # what one ray can add to a cell
 
     @property
     def darkest(self) -> int:
@@ -77,7 +77,6 @@ def cells_of(run: Run, name: str, split: bool) -> Cells:
     whole = node["value"].values.ravel()
     effective = node["effective"].values.ravel()
     mean_batch = node["flux"].values.sum(axis=0) / area
-    bound = largest(run, name)
     if split:
         # contributions of one mean weight: the odd batches hold their share of them
         share = np.divide(value, 2.0 * whole, out=np.zeros_like(whole), where=whole > 0.0)
@@ -90,5 +89,5 @@ def cells_of(run: Run, name: str, split: bool) -> Cells:
         effective=effective,
         mean_batch=odd(mean_batch) if split else mean_batch,
         blocks=run.blocks // 2 if split else run.blocks,
-        largest=None if bound is None else bound / cell_area,
+        largest=largest_in_cell(run, name),
     )

@@ -20,9 +20,7 @@ class PathRow:
 
     detector: str
     source: str | None
-    steps: tuple[
-        tuple[str, str], ...
-    ]  # ("cover:default", "through"), ("tray:default", "scatter x2")
+    steps: tuple[tuple[str, str], ...]  # ("cover:default", "through"), ("tray:rim", "scatter x2")
     run_means: tuple[float, ...]  # mean number of times of each step; 1 unless it says x2 or x3+
     flux: float
     error: float | None  # standard error; None where all contributions are zero

@@ -14,9 +14,7 @@ from lumentrace.analysis.samples import (
     flux_sample,
     loss_samples,
     mean_sample,
-    unhit_upper,
 )
-from lumentrace.analysis.statistics import no_hit_upper
 from lumentrace.analysis.unseen import Unseen, lost_flux, unseen_of
 from lumentrace.run.run import Run
 
@@ -62,14 +60,14 @@ def _of_detector(run: Run, name: str) -> Iterator[Measure]:
 
 
 def _of_sample(name: str, sample: Sample, unit: str, unseen: float, notes=()) -> Measure:
-    upper = unhit_upper(sample, UPPER_RATE)
+    upper = sample.largest.upper(UPPER_RATE, sample.blocks)
     return _measure(name, unit, sample.value, sample.error, sample.effective, upper, unseen, notes)
 
 
 def _extreme(name: str, cells: Cells, cell: int, unseen: Unseen) -> Measure:
     unit, notes = cells.node.attrs["map_unit"], _notes(cells, unseen)
     value, error, effective = cells.value[cell], cells.error(cell), cells.effective[cell]
-    upper = _cell_upper(cells, UPPER_RATE)
+    upper = cells.largest.upper(UPPER_RATE, cells.blocks)
     return _measure(name, unit, value, error, effective, upper, unseen.cell, notes)
 
 
@@ -78,15 +76,11 @@ def _uniformity(name: str, cells: Cells, mean: Sample, unseen: Unseen) -> Measur
     value, effective, error = None, cells.effective[cell], None
     if cells.mean > 0.0:
         value, error = cells.value[cell] / cells.mean, cells.ratio_error(cell)
-    _, upper = ratio_bounds(0.0, _cell_upper(cells, UPPER_RATE / 2), mean, UPPER_RATE / 2)
+    dark = cells.largest.upper(UPPER_RATE / 2, cells.blocks)
+    _, upper = ratio_bounds(0.0, dark, mean, UPPER_RATE / 2)
     change = unseen.of_ratio(cells.value[cell], cells.mean, len(cells.value))
     upper = upper if upper < 1.0 else np.inf  # every uniformity is below 1: that is no news
     return _measure(name, "1", value, error, effective, upper, change, _notes(cells, unseen))
-
-
-def _cell_upper(cells: Cells, alpha: float) -> float:
-    """Bound on a cell that was not hit; infinity where none is proven."""
-    return np.inf if cells.largest is None else no_hit_upper(alpha, cells.largest, cells.blocks)
 
 
 def _notes(cells: Cells, unseen: Unseen) -> tuple[str, ...]:

@@ -1,6 +1,7 @@
 """What a run knows of one sampled number, or of an array of them, and the bounds on its truth."""
 
 from dataclasses import dataclass, replace
+from typing import NamedTuple
 
 import numpy as np
 
@@ -21,6 +22,20 @@ FEW = 100.0  # effective contributions below which a number says so
 UPPER_RATE = 0.05  # of the bounds that are shown where nothing was counted
 
 
+class Largest(NamedTuple):
+    """What one ray with all its branches can add to a number in its block."""
+
+    amount: float
+    proven: bool  # else an estimate, which may raise a bound but never be one
+
+    def upper(self, alpha: float, blocks: int) -> float:
+        """Upper bound on a number that no ray has added to; infinity where none is proven."""
+        return no_hit_upper(alpha, self.amount, blocks) if self.proven else np.inf
+
+    def scaled(self, factor: float) -> "Largest":
+        return self._replace(amount=self.amount * factor)
+
+
 @dataclass(frozen=True)
 class Sample:
     """Estimates of sums of contributions that are not negative; all arrays of one shape."""
@@ -31,12 +46,16 @@ class Sample:
     effective: np.ndarray
     freedom: int  # degrees of freedom of error
     blocks: int
-    largest: float | None  # proven bound on what one ray adds in its block, in value's unit
+    largest: Largest  # in value's unit
 
     def scaled(self, factor: float) -> "Sample":
         """The same in another unit."""
-        largest = None if self.largest is None else self.largest * factor
-        return replace(self, value=self.value * factor, error=self.error * factor, largest=largest)
+        return replace(
+            self,
+            value=self.value * factor,
+            error=self.error * factor,
+            largest=self.largest.scaled(factor),
+        )
 
 
 def bounds_of(sample: Sample, alpha: float) -> tuple[np.ndarray, np.ndarray]:
@@ -44,27 +63,24 @@ def bounds_of(sample: Sample, alpha: float) -> tuple[np.ndarray, np.ndarray]:
 
     From 1000 effective contributions on the skewness-corrected t at half the rate; below, the
     exact Poisson bound on the effective number x the mean weight, which is exact for equal weights
-    only; without a hit 0 and the proven bound, or infinity where none is proven.
+    only; without a hit 0 and the proven bound, or infinity where none is proven. Below 100, where
+    the strongest contributions may all have been missed, a few weak ones do not lower the upper
+    bound beneath that of no hit.
     """
     hit = sample.effective > 0.0
     number = np.where(hit, sample.effective, 1.0)
     t_low, t_high = t_bounds(sample.value, sample.error, sample.freedom, alpha / 2, sample.skew)
-    few_low, few_high = poisson_bounds(number, alpha)
-    weight = sample.value / number
+    few_low, few_high = (b * sample.value / number for b in poisson_bounds(number, alpha))
+    missed = no_hit_upper(alpha, sample.largest.amount, sample.blocks)
+    few_high = np.where(number < FEW, np.maximum(few_high, missed), few_high)
     enough = number >= ENOUGH
-    low = np.where(enough, np.maximum(t_low, 0.0), few_low * weight)
-    high = np.where(enough, t_high, few_high * weight)
-    return np.where(hit, low, 0.0), np.where(hit, high, unhit_upper(sample, alpha))
+    low = np.where(enough, np.maximum(t_low, 0.0), few_low)
+    high = np.where(enough, t_high, few_high)
+    unhit = sample.largest.upper(alpha, sample.blocks)
+    return np.where(hit, low, 0.0), np.where(hit, high, unhit)
 
 
-def unhit_upper(sample: Sample, alpha: float) -> float:
-    """The upper bound on a value that no ray has added to; infinity where none is proven."""
-    if sample.largest is None:
-        return np.inf
-    return no_hit_upper(alpha, sample.largest, sample.blocks)
-
-
-def _from_batches(batch, square, run: Run, largest: float | None) -> Sample:
+def _from_batches(batch, square, run: Run, largest: Largest) -> Sample:
     """From batch values by group, (groups, 64), and the squares of the rays' totals, (groups,)."""
     batch = np.asarray(batch).sum(axis=0)
     value = batch.mean()
@@ -82,7 +98,7 @@ def _from_batches(batch, square, run: Run, largest: float | None) -> Sample:
 def flux_sample(run: Run, name: str) -> Sample:
     """The flux on a detector, in lm or W."""
     node = run.detector(name)
-    return _from_batches(node["flux"], node["flux_square"], run, largest(run, name))
+    return _from_batches(node["flux"], node["flux_square"], run, largest_at(run, name))
 
 
 def mean_sample(run: Run, name: str) -> Sample:
@@ -108,16 +124,14 @@ def loss_samples(run: Run) -> dict[str, Sample]:
                 rows[f"{tag}.{ABSORBED}"] = ("absorbed", {"tag": tag})
         if part in filled:
             rows[f"{part}:{BULK}.{ABSORBED}"] = ("bulk", {"volume": part})
-    samples = {
-        name: _from_batches(node[v].sel(at), node[f"{v}_square"].sel(at), run, None)
+    rows[ESCAPED] = ("ended", {"fate": "escaped"})
+    start = float(run.node("sources")["ray_flux"].max())
+    return {
+        name: _from_batches(
+            node[v].sel(at), node[f"{v}_square"].sel(at), run, Largest(start, name == ESCAPED)
+        ).scaled(percent)
         for name, (v, at) in rows.items()
     }
-    at = {"fate": "escaped"}
-    start = float(run.node("sources")["ray_flux"].max())
-    samples[ESCAPED] = _from_batches(
-        node["ended"].sel(at), node["ended_square"].sel(at), run, start
-    )
-    return {name: sample.scaled(percent) for name, sample in samples.items()}
 
 
 def cell_sample(run: Run, name: str) -> Sample:
@@ -135,7 +149,6 @@ def cell_sample(run: Run, name: str) -> Sample:
     else:
         skew = 1.0 / np.sqrt(np.where(effective > 0.0, effective, 1.0))
         freedom = run.blocks - 1
-    bound = largest(run, name)
     return Sample(
         value=node["value"].values.ravel(),
         error=np.nan_to_num(node["error"].values.ravel()),
@@ -143,7 +156,7 @@ def cell_sample(run: Run, name: str) -> Sample:
         effective=effective.ravel(),
         freedom=freedom,
         blocks=run.blocks,
-        largest=None if bound is None else bound / node.attrs["cell_area"],
+        largest=largest_in_cell(run, name),
     )
 
 
@@ -155,13 +168,32 @@ def responses(run: Run, name: str) -> np.ndarray:
     return np.ones_like(efficacy)
 
 
-def largest(run: Run, name: str) -> float | None:
-    """Proven bound on what one ray adds to a detector in its block, in lm or W; None without proof.
+def largest_at(run: Run, name: str) -> Largest:
+    """What one ray can add to the flux on a detector, in lm or W; proven where it catches.
 
     A catching detector counts a ray once, and no event raises the weight above its start: lobes
     are sampled by their shares, and roulette divides by p = max(a, 0.1) what a <= p multiplied.
-    A lobe whose samples carry weights above its albedo would end this proof.
+    A lobe whose samples carry weights above its albedo would end this proof. Where light passes
+    the most arrivals of one ray of this run are taken, an estimate.
     """
-    if not run.detector(name).attrs["catches"]:
-        return None
-    return float(np.max(run.node("sources")["ray_flux"].values * responses(run, name)))
+    return _largest(run, name, "arrivals_most")
+
+
+def largest_in_cell(run: Run, name: str) -> Largest:
+    """What one ray can add to a cell, in the unit of the map; see largest_at."""
+    cell_area = run.detector(name).attrs["cell_area"]
+    return _largest(run, name, "cell_arrivals_most").scaled(1.0 / cell_area)
+
+
+def _largest(run: Run, name: str, most: str) -> Largest:
+    start = run.node("sources")["ray_flux"].values * responses(run, name)
+    return Largest(
+        float(start.max()) * arrivals(run, name, most), bool(run.detector(name).attrs["catches"])
+    )
+
+
+def arrivals(run: Run, name: str, most: str) -> int:
+    """Arrivals that one ray can make: 1 where the detector catches, else the most that one made,
+    the attribute `most` of the detector."""
+    facts = run.detector(name).attrs
+    return 1 if facts["catches"] else max(1, int(facts[most]))

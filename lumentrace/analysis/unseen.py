@@ -4,7 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from lumentrace.analysis.samples import responses
+from lumentrace.analysis.samples import arrivals, responses
 from lumentrace.run.run import Run
 
 ARRIVALS_NOTE = "unseen takes the most arrivals of one ray, an estimate"
@@ -44,12 +44,10 @@ def unseen_of(run: Run, name: str) -> Unseen:
     response = np.zeros(run.node("sources").sizes["group"])
     np.maximum.at(response, group, responses(run, name))
     lost = float(lost_flux(run) @ response)
-    catches = bool(facts["catches"])
-    arrivals = 1 if catches else max(1, int(facts["arrivals_most"]))
-    in_cell = 1 if catches else max(1, int(facts["cell_arrivals_most"]))
+    flux = lost * arrivals(run, name, "arrivals_most")
     return Unseen(
-        flux=lost * arrivals,
-        mean=lost * arrivals / facts["area"],
-        cell=lost * in_cell / facts["cell_area"],
-        notes=() if catches or lost == 0.0 else (ARRIVALS_NOTE,),
+        flux=flux,
+        mean=flux / facts["area"],
+        cell=lost * arrivals(run, name, "cell_arrivals_most") / facts["cell_area"],
+        notes=() if facts["catches"] or lost == 0.0 else (ARRIVALS_NOTE,),
     )

@@ -158,7 +158,8 @@ def _detector(world: World, sums: Sums, scale: Scale, d: int) -> xarray.Dataset:
     square = values["cell_square"].sum(axis=0)
     if sums.cell_batch is not None:
         values["cell_batch"] = grid(sums.cell_batch, 1, scale.batch)
-        error = standard_error(values["cell_batch"].sum(axis=0))
+        rows = np.moveaxis(values["cell_batch"], 1, 0)  # one by one, which spares memory
+        error = np.stack([standard_error(row.sum(axis=0)) for row in rows])
     else:
         values["cell_block_square"] = grid(sums.cell_block_square, 1, lambda s: s / scale.blocks)
         mean = values["cell_half"].mean(axis=0)

@@ -64,7 +64,7 @@ def test_clear_glass(study):
     """VIE-32 at 0 degrees: 6 mm with absorption."""
     add_plates(study, 1, 1.52, thickness=6.0, absorption=0.01)
     add_beam(study, -6)
-    precise(study.trace(1).flux("passed"), cases.VIE_32["T(0 deg)"])
+    precise(study.trace(4).flux("passed"), cases.VIE_32["T(0 deg)"])
 
 
 @pytest.mark.parametrize(
@@ -78,7 +78,7 @@ def test_pile_of_plates(study, case, index, plates):
     add_beam(study, -2 * plates)
     result = study.trace(4)
     precise(result.flux("passed"), case["T"])
-    precise(result.flux("returned"), case["R"], 0.003)
+    agree([result.flux("returned")], [case["R"]])
 
 
 def test_paths_through_a_plate(study):
@@ -150,11 +150,11 @@ def lambertian_at(study, z, normal):
     )
 
 
-NEAR, FAR = 1e-3, 1e5  # mm: distance of the planes from the boundary, and their size
+NEAR, FAR = 0.01, 1000.0  # mm: distance of the planes from the boundary, and their size
 
 
 def test_lambertian_light_on_a_boundary(study):
-    """FRE-21: R and T for light from outside; planes 1 um from the boundary catch it all."""
+    """FRE-21: R and T for light from outside; planes 10 um from the boundary catch it all."""
     study.medium("glass", 1.5)
     study.part("glass", box((-FAR, -FAR, -FAR), (FAR, FAR, 0), TAGS), medium="glass")
     lambertian_at(study, NEAR, DOWN)
@@ -195,9 +195,9 @@ def test_absorbing_slab_of_index_one(tmp_path, case, absorption, length):
         "beam", disc={"center": (0, 0, 1), "normal": DOWN, "radius": 1}, pattern={"collimated": 0}
     )
     study.source(
-        "inside", disc={"center": (0, 0, -1e-9), "normal": DOWN, "radius": 1}, pattern="lambertian"
+        "inside", disc={"center": (0, 0, 0), "normal": DOWN, "radius": 1}, pattern="lambertian"
     )
-    study.detector("passed", (0, 0, -length - 1e-6), UP, (FAR, FAR))
+    study.detector("passed", (0, 0, -length - 1), UP, (FAR, FAR))
     flux = study.trace(4).run.detector("passed")["flux"]
     straight = flux.sel(group="beam").values
     assert straight == pytest.approx(case["internal transmittance, normal"], rel=1e-9)

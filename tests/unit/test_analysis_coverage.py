@@ -9,15 +9,16 @@ from math import sqrt
 import numpy as np
 import pytest
 
-from lumentrace.analysis.samples import Sample, bounds_of
+from lumentrace.analysis.samples import Largest, Sample, bounds_of
 from lumentrace.analysis.statistics import skewness_of_mean, t_bounds
 from lumentrace.run.estimate import effective_number, standard_error
 
 ALPHA = 0.01
+NOTHING = Largest(0.0, proven=False)
 
 
-def sample(batch: np.ndarray, square: np.ndarray) -> Sample:
-    """From (..., 64) sums of a batch and sums of squared contributions."""
+def sample(batch: np.ndarray, square: np.ndarray, largest=NOTHING) -> Sample:
+    """From (..., 64) sums of a batch and sums of squared contributions. 64 blocks in all."""
     value = batch.mean(axis=-1)
     return Sample(
         value=value,
@@ -26,7 +27,7 @@ def sample(batch: np.ndarray, square: np.ndarray) -> Sample:
         effective=effective_number(value, square / 64**2),
         freedom=63,
         blocks=64,
-        largest=None,
+        largest=largest,
     )
 
 
@@ -91,11 +92,28 @@ def test_bounds_on_log_normal_batches_hold_their_rate():
     assert (low > truth).mean() <= allowed(trials) and (high < truth).mean() <= allowed(trials)
 
 
+def test_a_few_weak_contributions_do_not_hide_a_strong_path_that_was_missed():
+    """Twenty contributions of 0.001 and, on average, half a one of 1: in 60 % of the runs the
+    strong path is not met. Their effective number and mean weight alone would then bound the truth
+    far below itself."""
+    trials, truth = 20_000, (20 * 0.001 + 0.5) / 64
+    rng = np.random.default_rng(11)
+    weak, strong = rng.poisson(20 / 64, (trials, 64)), rng.poisson(0.5 / 64, (trials, 64))
+    batch, square = 0.001 * weak + strong, (1e-6 * weak + strong).sum(axis=-1)
+    met = batch.any(axis=-1)
+    _, high = bounds_of(sample(batch[met], square[met], Largest(1.0, False)), ALPHA)
+    assert (high < truth).sum() / trials <= allowed(trials)
+    _, alone = bounds_of(sample(batch[met], square[met]), ALPHA)
+    assert (alone < truth).mean() > 0.5
+
+
 def test_the_no_hit_bound_holds_its_rate():
     """1024 rays a block in 64 blocks, each hitting with the chance that the bound just allows:
     no hit at all comes in 5 % of the runs."""
     rays, alpha, trials = 1024 * 64, 0.05, 40_000
-    nothing = Sample(*map(np.array, (0.0, 0.0, 0.0, 0.0)), freedom=63, blocks=64, largest=1 / 1024)
+    nothing = Sample(
+        *map(np.array, (0.0, 0.0, 0.0, 0.0)), freedom=63, blocks=64, largest=Largest(1 / 1024, True)
+    )
     low, high = bounds_of(nothing, alpha)
     assert low == 0.0
     hits = np.random.default_rng(9).binomial(rays, high, trials)
