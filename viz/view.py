@@ -1,12 +1,13 @@
 """Where pictures are seen from: parallel projections, and the planes that cut parts open."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 _ELEVATION, _AZIMUTH = np.radians(24.0), np.radians(28.0)
 _FAR = 3.0  # a first or last leg so many times longer than the rest of a way leaves the picture
 _ROOM = 2.2  # a part that would make the picture so many times larger is not shown whole
+_MARGIN = 0.1  # of the height, on each side
 _UP = np.array([0.0, 0.0, 1.0])
 
 
@@ -48,50 +49,56 @@ def overview(points: np.ndarray, parts: np.ndarray, through: np.ndarray, aspect:
     level = np.cos(_AZIMUTH) * front + np.sin(_AZIMUTH) * side
     toward = np.cos(_ELEVATION) * level + np.sin(_ELEVATION) * _UP
     right = np.cross(_UP, level)
-    view = _framed(right, np.cross(toward, right), toward, points, aspect, 0.10)
-    return view, Plane(through, front)
+    up = np.cross(toward, right)
+    view = View(right, up, toward, np.zeros(2), np.zeros(2))
+    return _framed(view, view.project(points), aspect), Plane(through, front)
 
 
 def section(ways: list[np.ndarray], boxes: list[np.ndarray], through: np.ndarray, aspect: float):
     """(View, Plane): square on to the plane x, y or z through a point in which the ways are drawn
     largest; the picture shows them, and whole those of the boxes (2, 3) that are not too large."""
-    ways = [_near(way) for way in ways]
-    views = [_facing(axis, np.concatenate(ways), aspect) for axis in range(3)]
-    view = max(views, key=lambda v: _length(v, ways) / v.size[1])
-    points = np.concatenate(ways)
+    views = [_facing(axis, ways, aspect) for axis in range(3)]
+    axis = max(range(3), key=lambda axis: _length(views[axis], ways))
+    view, shown = views[axis], _near(ways, views[axis])
     for box in sorted(boxes, key=lambda box: np.prod(np.ptp(box, axis=0))):
-        larger = _facing(np.abs(view.toward).argmax(), np.concatenate([points, box]), aspect)
-        if larger.size[1] <= _ROOM * view.size[1]:
-            points = np.concatenate([points, box])
-    return _facing(np.abs(view.toward).argmax(), points, aspect), Plane(through, view.toward)
+        larger = _framed(view, np.concatenate([*shown, view.project(box)]), aspect)
+        if larger.size[1] <= _ROOM * views[axis].size[1]:
+            view, shown = larger, [*shown, view.project(box)]
+    return view, Plane(through, view.toward)
 
 
-def _near(way: np.ndarray) -> np.ndarray:
-    """A way without first and last points that lie far off, such as a sun or a desk."""
-    for end in (slice(1, None), slice(None, -1)):
-        rest = way[end]
-        leg = np.linalg.norm(way[0] - way[1] if end.start else way[-1] - way[-2])
-        if len(rest) > 1 and leg > _FAR * np.linalg.norm(np.ptp(rest, axis=0)):
-            way = rest
-    return way
+def _near(ways: list[np.ndarray], view: View) -> list[np.ndarray]:
+    """Ways as seen, without first or last legs that mostly lead far off: to a sun or to a desk."""
+    flat = [view.project(way) for way in ways]
+    for first in (True, False):
+        bent = [way for way in flat if len(way) > 2]
+        rests = [way[1:] if first else way[:-1] for way in bent]
+        legs = [np.linalg.norm(way[1] - way[0] if first else way[-1] - way[-2]) for way in bent]
+        sizes = [np.linalg.norm(np.ptp(rest, axis=0)) for rest in rests]
+        if bent and np.median(np.array(legs) > _FAR * np.array(sizes)) > 0.5:
+            flat = rests
+    return flat
 
 
 def _length(view: View, ways: list[np.ndarray]) -> float:
-    return sum(np.linalg.norm(np.diff(view.project(w), axis=0), axis=1).sum() for w in ways)
+    """How long the ways are drawn in a picture of height 1."""
+    flat = _near(ways, view)
+    return sum(np.linalg.norm(np.diff(way, axis=0), axis=1).sum() for way in flat) / view.size[1]
 
 
-def _facing(axis: int, points: np.ndarray, aspect: float) -> View:
-    """Square on to an axis: x from the front, y from below, z from above."""
+def _facing(axis: int, ways: list[np.ndarray], aspect: float) -> View:
+    """Square on to an axis: x and z from their positive side, y from its negative one."""
     toward = np.eye(3)[axis] * (-1.0 if axis == 1 else 1.0)
     up = np.eye(3)[1] if axis == 2 else _UP
-    return _framed(np.cross(up, toward), up, toward, points, aspect, 0.12)
+    nowhere = np.zeros(2)
+    view = View(np.cross(up, toward), up, toward, nowhere, nowhere)
+    return _framed(view, np.concatenate(_near(ways, view)), aspect)
 
 
-def _framed(right, up, toward, points: np.ndarray, aspect: float, margin: float) -> View:
-    """A view that holds the points, with a margin, in a picture of this width to height."""
-    flat = points @ np.stack([right, up], axis=-1)
+def _framed(view: View, flat: np.ndarray, aspect: float) -> View:
+    """The view with a picture of this width to height that holds the projected points (n, 2)."""
     low, high = flat.min(axis=0), flat.max(axis=0)
-    height = max((high - low)[1], (high - low)[0] / aspect) * (1.0 + 2.0 * margin)
-    half = np.array([aspect, 1.0]) * height / 2.0
+    height = max(*(high - low) / (aspect, 1.0), 1e-9 * np.abs(flat).max(), 1e-30)
+    half = np.array([aspect, 1.0]) * height * (0.5 + _MARGIN)
     middle = (low + high) / 2.0
-    return View(right, up, toward, middle - half, middle + half)
+    return replace(view, low=middle - half, high=middle + half)

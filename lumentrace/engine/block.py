@@ -1,11 +1,10 @@
-"""One block of rays: the unit of work, of merging and of resuming."""
+"""Some consecutive rays of the run: a block, or one that is traced again."""
 
 from lumentrace.engine.emit import start
 from lumentrace.engine.history import follow, lose
 from lumentrace.engine.state import settle
 from lumentrace.engine.sums import TOO_DEEP
 from lumentrace.jit import kernel
-from lumentrace.world.arrays import BLOCK_RAYS
 
 
 @kernel
@@ -20,18 +19,13 @@ def clear(tally):
 
 
 @kernel
-def trace_ray(world, rows, ray, ray_number, hits, tally):
-    """Start and follow one ray of the run, and enter its totals in the block's account."""
-    if start(world, ray, ray_number, hits):
-        follow(world, rows, ray, 0, ray_number, hits, tally)
-    else:
-        lose(tally, rows, ray, 0, ray_number, TOO_DEEP, -1)
-    settle(tally, world.sources.group[ray.source[0]])
-
-
-@kernel
-def trace_block(world, rows, block, ray, hits, tally):
-    """Trace the rays of one block into an emptied tally."""
+def trace_rays(world, rows, first, last, rays, hits, tally):
+    """Trace rays [first, last) of the run into an emptied tally, each entered in its account."""
     clear(tally)
-    for place in range(BLOCK_RAYS):
-        trace_ray(world, rows, ray, block * BLOCK_RAYS + place, hits, tally)
+    ray = rays[0]
+    for ray_number in range(first, last):
+        if start(world, ray, ray_number, hits, tally):
+            follow(world, rows, ray, ray_number, hits, tally)
+        else:
+            lose(tally, rows, ray, ray_number, TOO_DEEP, -1)
+        settle(tally, world.sources.group[ray.source])

@@ -4,7 +4,7 @@ from lumentrace.engine.inside import toggled
 from lumentrace.engine.query import Leaving, cosine_of, find_pair, hit_set, point_of
 from lumentrace.jit import kernel
 from lumentrace.kernels import rng
-from lumentrace.kernels.vectors import frame, put, take, to_scene
+from lumentrace.kernels.vectors import frame, set_vector, to_scene, vector
 from lumentrace.models.dispatch import pattern_emit, start_of
 from lumentrace.world.arrays import BLOCK_RAYS, DRY, TRANSPARENT
 
@@ -19,8 +19,8 @@ def source_of(sources, place):
 
 
 @kernel
-def start(world, ray, ray_number, hits):
-    """Set branch 0 of the ray to the start of ray `ray_number` of the run.
+def start(world, ray, ray_number, hits, tally):
+    """Set the ray to the start of ray `ray_number` of the run.
 
     Returns False where the ray starts inside more bodies than the engine holds.
     """
@@ -37,35 +37,37 @@ def start(world, ray, ray_number, hits):
         sources.pattern[s], sources.pattern_values[s], whither[0], whither[1]
     )
     tangent, bitangent = frame(normal[0], normal[1], normal[2])
-    begin(ray, origin, to_scene(local, tangent, bitangent, normal[0], normal[1], normal[2]), face)
-    ray.source[0] = s
-    ray.number[0] = number
-    ray.wavelength[0] = sources.wavelength[s]
-    ray.weight[0] = sources.ray_flux[s]
+    direction = to_scene(local, tangent, bitangent, normal[0], normal[1], normal[2])
+    begin(ray, tally, origin, direction, face)
+    ray.source = s
+    ray.number = number
+    ray.wavelength = sources.wavelength[s]
+    ray.weight = sources.ray_flux[s]
     return not sources.immersed[s] or find_inside(world, ray, hits)
 
 
 @kernel
-def begin(ray, origin, direction, face):
-    """Set branch 0 to a fresh ray in the surroundings; face: what emits it, -1: nothing."""
-    put(ray.origin, 0, origin)
-    put(ray.direction, 0, direction)
-    ray.optical[0] = 0.0
-    ray.group[0] = 0.0
-    ray.events[0] = 0
-    ray.n_inside[0] = 0
-    ray.face[0] = face
-    ray.side[0] = 1.0
-    ray.fresh[0] = face >= 0
-    ray.n_skipped[0] = 0
-    ray.clear[0] = -1
-    ray.cover[0] = -1
-    ray.n_steps[0] = 0
-    ray.reflections[0] = 0
-    ray.scatters[0] = 0
-    for i in range(ray.n_met[0]):
-        ray.repeats[0, ray.met[0, i]] = 0
-    ray.n_met[0] = 0
+def begin(ray, tally, origin, direction, face):
+    """Set the ray to a fresh one in the surroundings; face: what emits it, -1: nothing."""
+    set_vector(ray.origin, origin)
+    set_vector(ray.direction, direction)
+    ray.optical = 0.0
+    ray.group = 0.0
+    ray.events = 0
+    ray.n_inside = 0
+    ray.face = face
+    ray.side = 1.0
+    ray.fresh = face >= 0
+    ray.n_skipped = 0
+    ray.clear = -1
+    ray.cover = -1
+    ray.n_steps = 0
+    ray.reflections = 0
+    ray.scatters = 0
+    for i in range(ray.n_met):
+        tally.repeats[0, tally.met[0, i]] = 0
+    ray.branch = 0
+    ray.n_met = 0
 
 
 @kernel
@@ -76,14 +78,14 @@ def find_inside(world, ray, hits):
     direction, which no mesh is aligned with. Returns False where there are too many.
     """
     mesh, bodies = world.mesh, world.bodies
-    direction = take(ray.direction, 0)
-    origin = take(ray.origin, 0)
-    leaving = Leaving(ray.face[0], 1.0, ray.fresh[0])
+    direction = vector(ray.direction)
+    origin = vector(ray.origin)
+    leaving = Leaving(ray.face, 1.0, ray.fresh)
     n_inside, n_skipped = 0, 0
     while True:
         count = hit_set(
             mesh, world.tree, world.detectors, origin, direction, leaving,
-            ray.skipped[0], n_skipped, hits,
+            ray.skipped, n_skipped, hits,
         )  # fmt: skip
         if count < 0:
             return False
@@ -91,37 +93,38 @@ def find_inside(world, ray, hits):
             break
         face = -1
         for i in range(count):
-            ray.skipped[0, i] = hits.prim[i]
-            body = hits.owner[i]
+            ray.skipped[i] = hits.hit[i].prim
+            body = hits.hit[i].owner
             if body < 0:
                 continue
             if face < 0:
                 face = i
             if bodies.kind[body] == TRANSPARENT:
-                n_inside = toggled(ray.inside[0], n_inside, body)
+                n_inside = toggled(ray.inside, n_inside, body)
                 if n_inside < 0:
                     return False
         n_skipped = count
         if face >= 0:
-            origin = point_of(mesh, hits, face)
-            leaving = Leaving(hits.prim[face], -1.0 if hits.front[face] else 1.0, False)
+            origin = point_of(mesh, hits.hit[face])
+            hit = hits.hit[face]
+            leaving = Leaving(hit.prim, -1.0 if hit.front else 1.0, False)
         else:
-            t = hits.t[0]
+            t = hits.hit[0].t
             origin = (
                 origin[0] + t * direction[0],
                 origin[1] + t * direction[1],
                 origin[2] + t * direction[2],
             )
             leaving = Leaving(leaving.face, leaving.side, False)
-    ray.n_inside[0] = n_inside
+    ray.n_inside = n_inside
     return True
 
 
 @kernel
-def starts_in_gap(world, ray, hits):
+def starts_in_gap(world, ray, hit):
     """Whether the nearest hit of a fresh ray is a face that its own face lies dry on."""
-    row = find_pair(world.mesh, ray.face[0], hits.prim[0])
-    if row < 0 or world.mesh.pair_kind[row] != DRY or hits.owner[0] < 0:
+    row = find_pair(world.mesh, ray.face, hit.prim)
+    if row < 0 or world.mesh.pair_kind[row] != DRY or hit.owner < 0:
         return False
-    cosine = abs(cosine_of(world.mesh, world.detectors, hits.prim[0], take(ray.direction, 0)))
-    return hits.t[0] <= hits.reach[0] + world.mesh.pair_gap[row] / cosine
+    cosine = abs(cosine_of(world.mesh, world.detectors, hit.prim, vector(ray.direction)))
+    return hit.t <= hit.reach + world.mesh.pair_gap[row] / cosine

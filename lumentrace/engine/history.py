@@ -12,7 +12,7 @@ from lumentrace.engine.inside import (
     toggled,
 )
 from lumentrace.engine.query import Leaving, cosine_of, find_pair, hit_set, point_of
-from lumentrace.engine.state import ARRIVALS, KEYS, LOST, STEPS, TRAIL, deposit
+from lumentrace.engine.state import ARRIVALS, KEYS, LOSSES, STEPS, TRAIL, deposit
 from lumentrace.engine.sums import (
     CUT_OFF,
     LOST_KEPT,
@@ -23,7 +23,7 @@ from lumentrace.engine.sums import (
 )
 from lumentrace.engine.surface import act, finish_of
 from lumentrace.jit import kernel
-from lumentrace.kernels.vectors import put, take
+from lumentrace.kernels.vectors import put, set_vector, vector
 from lumentrace.models.dispatch import detector_bin_of, medium_advance
 from lumentrace.world.arrays import DRY, OPAQUE, TRANSPARENT
 
@@ -31,18 +31,16 @@ NO_UNIFORMS = (0.0, 0.0, 0.0, 0.0)
 
 
 @kernel
-def lose(tally, rows, ray, b, ray_number, reason, tag):
+def lose(tally, rows, ray, ray_number, reason, tag):
     """Count a ray that cannot be followed any further, and keep its number and place."""
     row = rows.cut_off if reason == CUT_OFF else rows.unresolved
-    deposit(tally, row, ray.weight[b])
-    n = tally.used[LOST]
+    deposit(tally, row, ray.weight)
+    n = tally.used[LOSSES]
     if n < LOST_KEPT:
-        tally.lost_ray[n] = ray_number
-        tally.lost_reason[n] = reason
-        tally.lost_weight[n] = ray.weight[b]
-        put(tally.lost_place, n, take(ray.origin, b))
-        tally.lost_tag[n] = tag
-    tally.used[LOST] += 1
+        lost = tally.lost[n]
+        lost.ray, lost.reason, lost.weight, lost.tag = ray_number, reason, ray.weight, tag
+        lost.x, lost.y, lost.z = vector(ray.origin)
+    tally.used[LOSSES] += 1
 
 
 @kernel
@@ -55,63 +53,60 @@ def mark(tally, position):
 
 
 @kernel
-def arrive(world, tally, ray, b, ray_number, detector, cell, amount):
+def arrive(world, tally, ray, ray_number, detector, cell, amount):
     """List an arrival with its path and with what was met on the way.
 
     Beyond the room of the lists it is only counted, so that the block can be done again with more.
     """
     n = tally.used[ARRIVALS]
     first_step, first_key = tally.used[STEPS], tally.used[KEYS]
-    n_steps, n_met = min(ray.n_steps[b], STEPS_MAX), ray.n_met[b]
+    n_steps, n_met = min(ray.n_steps, STEPS_MAX), ray.n_met
     tally.used[ARRIVALS] += 1
     tally.used[STEPS] += n_steps
     tally.used[KEYS] += n_met
     if (
-        n >= len(tally.ray)
+        n >= len(tally.arrival)
         or first_step + n_steps > len(tally.step)
         or first_key + n_met > len(tally.key)
     ):
         return
-    tally.ray[n] = ray_number
-    tally.detector[n] = detector
-    tally.source[n] = ray.source[b]
-    tally.cell[n] = cell
-    tally.amount[n] = amount
-    tally.optical[n] = ray.optical[b]
-    tally.group[n] = ray.group[b]
-    tally.reflections[n] = ray.reflections[b]
-    tally.scatters[n] = ray.scatters[b]
-    tally.marks[n] = tally.used[TRAIL]
-    tally.too_long[n] = ray.n_steps[b] > STEPS_MAX
-    tally.last_step[n] = first_step + n_steps
-    tally.last_key[n] = first_key + n_met
+    arrival = tally.arrival[n]
+    arrival.ray, arrival.detector, arrival.source = ray_number, detector, ray.source
+    arrival.cell, arrival.amount = cell, amount
+    arrival.optical, arrival.group = ray.optical, ray.group
+    arrival.reflections, arrival.scatters = ray.reflections, ray.scatters
+    arrival.marks = tally.used[TRAIL]
+    arrival.too_long = ray.n_steps > STEPS_MAX
+    arrival.last_step = first_step + n_steps
+    arrival.last_key = first_key + n_met
     for i in range(n_steps):
-        tally.step[first_step + i] = ray.step[b, i]
-        tally.run[first_step + i] = ray.run[b, i]
+        tally.step[first_step + i].step = ray.step[i]
+        tally.step[first_step + i].run = ray.run[i]
     for i in range(n_met):
-        tally.key[first_key + i] = ray.met[b, i]
-        tally.repeats[first_key + i] = ray.repeats[b, ray.met[b, i]]
+        key = tally.met[ray.branch, i]
+        tally.key[first_key + i].key = key
+        tally.key[first_key + i].repeats = tally.repeats[ray.branch, key]
 
 
 @kernel
-def detect(world, tally, rows, ray, b, ray_number, hits, count):
+def detect(world, tally, rows, ray, ray_number, hits, count):
     """Let every detector of the event count the ray once; True where one catches it."""
     detectors = world.detectors
     caught = False
     for i in range(count):
-        if hits.owner[i] >= 0:
+        if hits[i].owner >= 0:
             continue
-        d = -1 - hits.owner[i]
+        d = -1 - hits[i].owner
         cell, response = detector_bin_of(
-            detectors.model[d], detectors, d, hits.u[i], hits.v[i], hits.front[i],
-            ray.wavelength[b], world.luminosity,
+            detectors.model[d], detectors, d, hits[i].u, hits[i].v, hits[i].front,
+            ray.wavelength, world.luminosity,
         )  # fmt: skip
         if cell < 0:
             continue
-        arrive(world, tally, ray, b, ray_number, d, cell, ray.weight[b] * response)
+        arrive(world, tally, ray, ray_number, d, cell, ray.weight * response)
         caught = caught or detectors.catches[d]
     if caught:
-        deposit(tally, rows.detected, ray.weight[b])
+        deposit(tally, rows.detected, ray.weight)
     return caught
 
 
@@ -124,13 +119,13 @@ def opaque_hit(bodies, hits, count):
     """
     best = -1
     for i in range(count):
-        body = hits.owner[i]
+        body = hits[i].owner
         if body < 0 or bodies.kind[body] == TRANSPARENT:
             continue
-        if best < 0 or body < hits.owner[best]:
+        if best < 0 or body < hits[best].owner:
             best = i
-        elif body == hits.owner[best] and bodies.kind[body] == OPAQUE:
-            if hits.front[i] and not hits.front[best]:
+        elif body == hits[best].owner and hits[i].front > hits[best].front:
+            if bodies.kind[body] == OPAQUE:
                 best = i
     return best
 
@@ -139,15 +134,15 @@ def opaque_hit(bodies, hits, count):
 def dry_partner(mesh, bodies, hits, count, opaque):
     """The hit of a clear face that the opaque hit lies dry on, -1: none."""
     for i in range(count):
-        if hits.owner[i] >= 0 and bodies.kind[hits.owner[i]] == TRANSPARENT:
-            row = find_pair(mesh, hits.prim[opaque], hits.prim[i])
+        if hits[i].owner >= 0 and bodies.kind[hits[i].owner] == TRANSPARENT:
+            row = find_pair(mesh, hits[opaque].prim, hits[i].prim)
             if row >= 0 and mesh.pair_kind[row] == DRY:
                 return i
     return -1
 
 
 @kernel
-def cross(bodies, ray, b, hits, count):
+def cross(bodies, ray, hits, count):
     """Fill ray.after: the bodies that the ray is inside once it is through the event's surfaces.
 
     Marks the hits at which a body is entered or left, and returns the first of them; -1: none;
@@ -155,37 +150,37 @@ def cross(bodies, ray, b, hits, count):
     outline, the one counts that fits whether the ray is inside.
     """
     first = -1
-    n = ray.n_inside[b]
+    n = ray.n_inside
     for i in range(n):
-        ray.after[b, i] = ray.inside[b, i]
+        ray.after[i] = ray.inside[i]
     for i in range(count):
-        hits.crossed[i] = False
-        body = hits.owner[i]
+        hits[i].crossed = False
+        body = hits[i].owner
         if body < 0 or bodies.kind[body] != TRANSPARENT:
             continue
-        if hits.front[i] == contains(ray.inside[b], ray.n_inside[b], body):
+        if hits[i].front == contains(ray.inside, ray.n_inside, body):
             other_side = False
             for j in range(count):
-                other_side = other_side or (j != i and hits.owner[j] == body)
+                other_side = other_side or (j != i and hits[j].owner == body)
             if not other_side:
                 return -2 - NOT_INSIDE
             continue
-        hits.crossed[i] = True
-        n = toggled(ray.after[b], n, body)
+        hits[i].crossed = True
+        n = toggled(ray.after, n, body)
         if n < 0:
             return -2 - TOO_DEEP
         if first < 0:
             first = i
-    ray.n_after[b] = n
+    ray.n_after = n
     return first
 
 
 @kernel
-def pass_through(ray, b):
+def pass_through(ray):
     """Make what lies behind the surface what the ray is inside."""
-    for i in range(ray.n_after[b]):
-        ray.inside[b, i] = ray.after[b, i]
-    ray.n_inside[b] = ray.n_after[b]
+    for i in range(ray.n_after):
+        ray.inside[i] = ray.after[i]
+    ray.n_inside = ray.n_after
 
 
 @kernel
@@ -199,33 +194,33 @@ def acting_hit(world, hits, count, before, behind):
     first = before if behind < 0 or (before >= 0 and rank[before] > rank[behind]) else behind
     chosen, other = -1, -1
     for i in range(count):
-        if hits.crossed[i] and hits.owner[i] == first:
+        if hits[i].crossed and hits[i].owner == first:
             chosen = i
-        elif hits.crossed[i] and (hits.owner[i] == before or hits.owner[i] == behind):
+        elif hits[i].crossed and (hits[i].owner == before or hits[i].owner == behind):
             other = i
     tag = world.mesh.tag
-    if other >= 0 and finish_of(world.tags, tag[hits.prim[chosen]], hits.front[chosen]) == 0:
-        if finish_of(world.tags, tag[hits.prim[other]], hits.front[other]) != 0:
+    if other >= 0 and finish_of(world.tags, tag[hits[chosen].prim], hits[chosen].front) == 0:
+        if finish_of(world.tags, tag[hits[other].prim], hits[other].front) != 0:
             return other
     return chosen
 
 
 @kernel
-def leave(ray, b, face, side, hits, count, acting):
+def leave(ray, face, side, hits, count, acting):
     """The ray goes on from a face, on that side of it; the event's other bodies are behind it."""
-    ray.face[b] = face
-    ray.side[b] = side
-    ray.fresh[b] = False
+    ray.face = face
+    ray.side = side
+    ray.fresh = False
     n = 0
     for i in range(count):
-        if hits.owner[i] != hits.owner[acting]:
-            ray.skipped[b, n] = hits.prim[i]
+        if hits[i].owner != hits[acting].owner:
+            ray.skipped[n] = hits[i].prim
             n += 1
-    ray.n_skipped[b] = n
+    ray.n_skipped = n
 
 
 @kernel
-def act_in_gap(world, rows, ray, b, tally, factor):
+def act_in_gap(world, rows, ray, tally, factor):
     """One event in a dry gap, or at its clear face from inside; False where the ray ends.
 
     The clear face and the opaque one or sheet lie in one place, with air between. Light in the gap
@@ -233,10 +228,10 @@ def act_in_gap(world, rows, ray, b, tally, factor):
     the gap of two opaque faces stays there.)
     """
     mesh, bodies = world.mesh, world.bodies
-    clear, cover = ray.clear[b], ray.cover[b]
+    clear, cover = ray.clear, ray.cover
     body = mesh.body[clear]
-    inside = contains(ray.inside[b], ray.n_inside[b], body)
-    direction = take(ray.direction, b)
+    inside = contains(ray.inside, ray.n_inside, body)
+    direction = vector(ray.direction)
     at_clear = inside or cosine_of(mesh, world.detectors, clear, direction) < 0.0
     face = clear if at_clear else cover
     front = cosine_of(mesh, world.detectors, face, direction) < 0.0
@@ -246,127 +241,129 @@ def act_in_gap(world, rows, ray, b, tally, factor):
         n_clear = index_of(world.media, medium_of(bodies, body))
     n1 = n_clear if inside else n_air
     n2 = (n_air if inside else n_clear) if at_clear else n_air
-    side = act(world, rows, ray, b, tally, face, finish_of(world.tags, mesh.tag[face], front), n1, n2, factor)
+    finish = finish_of(world.tags, mesh.tag[face], front)
+    side = act(world, rows, ray, tally, face, finish, n1, n2, factor)
     if side == 0:
         return False
     stays_in_gap = side < 0 if inside else side > 0
     if at_clear and side < 0:
-        ray.n_inside[b] = toggled(ray.inside[b], ray.n_inside[b], body)
+        ray.n_inside = toggled(ray.inside, ray.n_inside, body)
     if not stays_in_gap:
-        ray.face[b] = face
-        ray.side[b] = float(side) if front else -float(side)
-        ray.fresh[b] = False
-        ray.skipped[b, 0] = cover if at_clear else clear
-        ray.n_skipped[b] = 1
-        ray.clear[b] = -1
+        ray.face = face
+        ray.side = float(side) if front else -float(side)
+        ray.fresh = False
+        ray.skipped[0] = cover if at_clear else clear
+        ray.n_skipped = 1
+        ray.clear = -1
     return True
 
 
 @kernel
-def follow(world, rows, ray, b, ray_number, hits, tally):
-    """Follow branch b of a ray to its end; everything goes to the tally."""
+def follow(world, rows, ray, ray_number, scratch, tally):
+    """Follow a branch of a ray to its end; everything goes to the tally."""
     mesh, bodies, media = world.mesh, world.bodies, world.media
+    hits = scratch.hit
     factor = 1.0
-    mark(tally, take(ray.origin, b))
+    mark(tally, vector(ray.origin))
     while True:
-        if ray.events[b] >= world.settings.events_max:
-            lose(tally, rows, ray, b, ray_number, CUT_OFF, -1)
+        if ray.events >= world.settings.events_max:
+            lose(tally, rows, ray, ray_number, CUT_OFF, -1)
             return
-        if ray.clear[b] >= 0:
-            if not act_in_gap(world, rows, ray, b, tally, factor):
+        if ray.clear >= 0:
+            if not act_in_gap(world, rows, ray, tally, factor):
                 return
             factor = 1.0
             continue
 
-        origin = take(ray.origin, b)
-        direction = take(ray.direction, b)
-        leaving = Leaving(ray.face[b], ray.side[b], ray.fresh[b])
+        origin = vector(ray.origin)
+        direction = vector(ray.direction)
+        leaving = Leaving(ray.face, ray.side, ray.fresh)
         count = hit_set(
             mesh, world.tree, world.detectors, origin, direction, leaving,
-            ray.skipped[b], ray.n_skipped[b], hits,
+            ray.skipped, ray.n_skipped, scratch,
         )  # fmt: skip
         if count < 0:
-            lose(tally, rows, ray, b, ray_number, TOO_MANY_AT_ONCE, -1)
+            lose(tally, rows, ray, ray_number, TOO_MANY_AT_ONCE, -1)
             return
-        if count > 0 and ray.fresh[b] and starts_in_gap(world, ray, hits):
-            ray.clear[b], ray.cover[b], ray.fresh[b] = hits.prim[0], ray.face[b], False
+        if count > 0 and ray.fresh and starts_in_gap(world, ray, hits[0]):
+            ray.clear, ray.cover, ray.fresh = hits[0].prim, ray.face, False
             continue
 
-        before = acting_body(ray.inside[b], ray.n_inside[b], bodies.rank)
+        before = acting_body(ray.inside, ray.n_inside, bodies.rank)
         medium = medium_of(bodies, before)
         position, direction, factor, optical, group, _ = medium_advance(
-            media.model[medium], media.values[medium], ray.wavelength[b], origin, direction,
-            hits.t[0] if count > 0 else inf, NO_UNIFORMS,
+            media.model[medium], media.values[medium], ray.wavelength, origin, direction,
+            hits[0].t if count > 0 else inf, NO_UNIFORMS,
         )  # fmt: skip
-        absorbed = ray.weight[b] * (1.0 - factor)
+        absorbed = ray.weight * (1.0 - factor)
         if absorbed > 0.0:
             if before >= 0:
                 deposit(tally, rows.bulk + bodies.part[before], absorbed)
                 deposit(tally, rows.part + bodies.part[before], absorbed)
             else:
                 deposit(tally, rows.surroundings, absorbed)
-            ray.weight[b] *= factor
+            ray.weight *= factor
         if count == 0:
-            deposit(tally, rows.escaped, ray.weight[b])
+            deposit(tally, rows.escaped, ray.weight)
             mark(tally, far_point(world.tree, origin, direction))
             return
-        ray.optical[b] += optical
-        ray.group[b] += group
+        ray.optical += optical
+        ray.group += group
         mark(tally, position)
-        if detect(world, tally, rows, ray, b, ray_number, hits, count):
+        if detect(world, tally, rows, ray, ray_number, hits, count):
             return
 
         opaque = opaque_hit(bodies, hits, count)
-        first = cross(bodies, ray, b, hits, count) if opaque < 0 else -1
+        first = cross(bodies, ray, hits, count) if opaque < 0 else -1
         if first < -1:
-            lose(tally, rows, ray, b, ray_number, -2 - first, tag_of(mesh, hits, count))
+            lose(tally, rows, ray, ray_number, -2 - first, tag_of(mesh, hits, count))
             return
         n1 = index_of(media, medium)
         if opaque >= 0:
             partner = dry_partner(mesh, bodies, hits, count, opaque)
-            if partner >= 0 and hits.owner[partner] == before:
-                put(ray.origin, b, point_of(mesh, hits, partner))
-                ray.clear[b], ray.cover[b] = hits.prim[partner], hits.prim[opaque]
+            if partner >= 0 and hits[partner].owner == before:
+                set_vector(ray.origin, point_of(mesh, hits[partner]))
+                ray.clear, ray.cover = hits[partner].prim, hits[opaque].prim
                 continue
             acting, n2 = opaque, n1
         elif first >= 0:
-            behind = acting_body(ray.after[b], ray.n_after[b], bodies.rank)
+            behind = acting_body(ray.after, ray.n_after, bodies.rank)
             if behind == before:  # hidden inside a part that outranks what is crossed
-                pass_through(ray, b)
-                put(ray.origin, b, point_of(mesh, hits, first))
-                side = -1.0 if hits.front[first] else 1.0
-                leave(ray, b, hits.prim[first], side, hits, count, first)
+                pass_through(ray)
+                set_vector(ray.origin, point_of(mesh, hits[first]))
+                side = -1.0 if hits[first].front else 1.0
+                leave(ray, hits[first].prim, side, hits, count, first)
                 continue
             acting = acting_hit(world, hits, count, before, behind)
             partner = -1
             n2 = index_of(media, medium_of(bodies, behind))
         else:  # only detectors, and they let pass
-            put(ray.origin, b, position)
+            set_vector(ray.origin, position)
             for i in range(count):
-                ray.skipped[b, i] = hits.prim[i]
-            ray.n_skipped[b] = count
-            ray.fresh[b] = False
+                ray.skipped[i] = hits[i].prim
+            ray.n_skipped = count
+            ray.fresh = False
             continue
 
-        face, front = hits.prim[acting], hits.front[acting]
+        face, front = hits[acting].prim, hits[acting].front
         finish = finish_of(world.tags, mesh.tag[face], front)
-        side = act(world, rows, ray, b, tally, face, finish, n1, n2, factor)
+        side = act(world, rows, ray, tally, face, finish, n1, n2, factor)
         if side == 0:
             return
-        put(ray.origin, b, point_of(mesh, hits, acting))
-        leave(ray, b, face, float(side) if front else -float(side), hits, count, acting)
+        set_vector(ray.origin, point_of(mesh, hits[acting]))
+        leave(ray, face, float(side) if front else -float(side), hits, count, acting)
         if side < 0 and opaque < 0:
-            pass_through(ray, b)
+            pass_through(ray)
         if side < 0 and partner >= 0:  # through a sheet that lies dry on a clear face
-            ray.clear[b], ray.cover[b] = hits.prim[partner], face
+            ray.clear, ray.cover = hits[partner].prim, face
 
 
 @kernel
 def tag_of(mesh, hits, count):
     """Tag of the nearest face of an event, -1: none."""
     for i in range(count):
-        if hits.owner[i] >= 0:
-            return mesh.tag[hits.prim[i]]
+        if hits[i].owner >= 0:
+            return mesh.tag[hits[i].prim]
     return -1
 
 

@@ -8,10 +8,9 @@ from typing import NamedTuple
 
 import numpy as np
 
-from lumentrace.engine.state import ARRIVALS
+from lumentrace.engine.state import ARRIVALS, LOSSES
 from lumentrace.engine.sums import KEPT_RAYS, LOST_KEPT, REPEATS_MAX, STEPS_MAX
 from lumentrace.jit import allocating_kernel, kernel
-from lumentrace.kernels.vectors import put, take
 from lumentrace.models.events import BULK, EVENTS, THROUGH
 from lumentrace.world.arrays import BATCHES
 
@@ -59,16 +58,12 @@ class Totals(NamedTuple):
     cell_square: np.ndarray
     cell_block: np.ndarray  # (G, C) float64 of this block, where batches are not kept
     what_if: np.ndarray
-    lost_ray: np.ndarray
-    lost_reason: np.ndarray
-    lost_weight: np.ndarray
-    lost_place: np.ndarray
-    lost_tag: np.ndarray
+    lost: np.ndarray
     lost_count: np.ndarray  # (1,) int64
 
 
 @kernel
-def path_hash(detector, source, steps, runs, first, last):
+def path_hash(detector, source, steps, first, last):
     """64-bit FNV-1a digest of a path: detector, source, and each step with its run up to three.
 
     Fowler, Noll, Vo: the FNV non-cryptographic hash algorithm (RFC 9923), by words, not bytes.
@@ -76,21 +71,21 @@ def path_hash(detector, source, steps, runs, first, last):
     digest = (_FNV_OFFSET ^ np.uint64(detector)) * _FNV_PRIME
     digest = (digest ^ np.uint64(source)) * _FNV_PRIME
     for i in range(first, last):
-        digest = (digest ^ np.uint64(signed_step(steps[i], runs[i]))) * _FNV_PRIME
+        digest = (digest ^ np.uint64(signed_step(steps[i]))) * _FNV_PRIME
         digest ^= digest >> np.uint64(32)
     return digest
 
 
 @kernel
-def signed_step(step, run):
-    """A step as it stands in the signature: tag, event, and a run of one, two, or three and more."""
-    return (step << 4) | min(run, 3)
+def signed_step(step):
+    """A STEP as it stands in the signature: tag, event, and a run of one, two, or three or more."""
+    return (step.step << 4) | min(step.run, 3)
 
 
 @kernel
 def row_of(ledger, detector, source, tally, first, last):
     """Row of a path, made if it is new and there is room; -1: neither."""
-    digest = path_hash(detector, source, tally.step, tally.run, first, last)
+    digest = path_hash(detector, source, tally.step, first, last)
     mask = np.uint64(len(ledger.slot) - 1)
     place = digest & mask
     while ledger.slot[place] > 0:
@@ -108,24 +103,25 @@ def row_of(ledger, detector, source, tally, first, last):
     ledger.source[row] = source
     ledger.n_steps[row] = last - first
     for i in range(last - first):
-        ledger.step[row, i] = signed_step(tally.step[first + i], tally.run[first + i])
+        ledger.step[row, i] = signed_step(tally.step[first + i])
     return row
 
 
 @kernel
 def add_to_path(ledger, row, tally, i, first, last, batch):
     """Add arrival i of the block to its path."""
-    amount = tally.amount[i]
+    arrival = tally.arrival[i]
+    amount = arrival.amount
     ledger.batch[row, batch] += amount
-    ledger.optical[row] += amount * tally.optical[i]
-    ledger.group[row] += amount * tally.group[i]
-    ledger.reflections[row] += amount * tally.reflections[i]
-    ledger.scatters[row] += amount * tally.scatters[i]
+    ledger.optical[row] += amount * arrival.optical
+    ledger.group[row] += amount * arrival.group
+    ledger.reflections[row] += amount * arrival.reflections
+    ledger.scatters[row] += amount * arrival.scatters
     for k in range(first, last):
-        ledger.run_sum[row, k - first] += amount * tally.run[k]
+        ledger.run_sum[row, k - first] += amount * tally.step[k].run
     n = ledger.count[row]
     if n < KEPT_RAYS:
-        ledger.ray[row, n] = tally.ray[i]
+        ledger.ray[row, n] = arrival.ray
     ledger.count[row] = n + 1
 
 
@@ -147,14 +143,14 @@ def add_what_if(what_if, tags_part, tag_repeats, part_repeats, tally, first, las
     """
     n_tags = len(tag_repeats)
     for k in range(first, last):
-        key, repeats = tally.key[k], tally.repeats[k]
+        key, repeats = tally.key[k].key, tally.key[k].repeats
         _add_what_if(what_if, key, repeats, amount)
         event = key % N_EVENTS
         if event != THROUGH and event != BULK:
             tag_repeats[key // N_EVENTS] += repeats
             part_repeats[tags_part[key // N_EVENTS]] += repeats
     for k in range(first, last):
-        tag = tally.key[k] // N_EVENTS
+        tag = tally.key[k].key // N_EVENTS
         if tag_repeats[tag] > 0:
             _add_what_if(what_if, n_tags * N_EVENTS + tag, tag_repeats[tag], amount)
             tag_repeats[tag] = 0
@@ -166,21 +162,21 @@ def add_what_if(what_if, tags_part, tag_repeats, part_repeats, tally, first, las
 
 
 @kernel
-def _add_squares(totals, ledger, tally, path, group_of, first, last):
+def _add_squares(totals, ledger, arrivals, path, group_of, first, last):
     """Squares of what one ray, with arrivals [first, last) of the block, adds to each number."""
     for i in range(first, last):
-        group = group_of[tally.source[i]]
-        d, cell = tally.detector[i], tally.cell[i]
+        d, cell = arrivals[i].detector, arrivals[i].cell
+        group = group_of[arrivals[i].source]
         at_detector = at_cell = on_path = 0.0
         n_detector = n_cell = 0
         first_detector = first_cell = first_path = True
         for j in range(first, last):
-            amount = tally.amount[j]
-            if tally.detector[j] == d:
+            amount = arrivals[j].amount
+            if arrivals[j].detector == d:
                 at_detector += amount
                 n_detector += 1
                 first_detector = first_detector and j >= i
-            if tally.cell[j] == cell:
+            if arrivals[j].cell == cell:
                 at_cell += amount
                 n_cell += 1
                 first_cell = first_cell and j >= i
@@ -205,20 +201,18 @@ def merge_block(block, tally, group_of, tags_part, totals, ledger, tag_repeats, 
     part_repeats: zeros, (T,) and (P,) int64.
     """
     batch = block % BATCHES
-    totals.account[:, :, batch] += tally.account
-    totals.account_square[:] += tally.square
+    for group in range(tally.account.shape[0]):
+        for row in range(tally.account.shape[1]):
+            totals.account[group, row, batch] += tally.account[group, row]
+            totals.account_square[group, row] += tally.square[group, row]
     keeps_batches = totals.cell_batch.shape[1] > 0
-    n = tally.used[ARRIVALS]
+    arrivals, n = tally.arrival, tally.used[ARRIVALS]
     path = np.empty(n, np.int64)
     first_step = first_key = first_of_ray = 0
     for i in range(n):
-        d, source, cell, amount = (
-            tally.detector[i],
-            tally.source[i],
-            tally.cell[i],
-            tally.amount[i],
-        )
-        group = group_of[source]
+        arrival = arrivals[i]
+        d, cell, amount = arrival.detector, arrival.cell, arrival.amount
+        group = group_of[arrival.source]
         totals.flux[d, group, batch] += amount
         totals.flux_count[d, group] += 1
         totals.cell_half[batch & 1, group, cell] += amount
@@ -226,10 +220,10 @@ def merge_block(block, tally, group_of, tags_part, totals, ledger, tag_repeats, 
             totals.cell_batch[group, cell, batch] += amount
         else:
             totals.cell_block[group, cell] += amount
-        last_step, last_key = tally.last_step[i], tally.last_key[i]
+        last_step, last_key = arrival.last_step, arrival.last_key
         path[i] = -1
-        if not tally.too_long[i]:
-            path[i] = row_of(ledger, d, source, tally, first_step, last_step)
+        if not arrival.too_long:
+            path[i] = row_of(ledger, d, arrival.source, tally, first_step, last_step)
         if path[i] >= 0:
             add_to_path(ledger, path[i], tally, i, first_step, last_step, batch)
         else:
@@ -240,12 +234,12 @@ def merge_block(block, tally, group_of, tags_part, totals, ledger, tag_repeats, 
             tally, first_key, last_key, amount,
         )  # fmt: skip
         first_step, first_key = last_step, last_key
-        if i + 1 == n or tally.ray[i + 1] != tally.ray[i]:
-            _add_squares(totals, ledger, tally, path, group_of, first_of_ray, i + 1)
+        if i + 1 == n or arrivals[i + 1].ray != arrival.ray:
+            _add_squares(totals, ledger, arrivals, path, group_of, first_of_ray, i + 1)
             first_of_ray = i + 1
     if not keeps_batches:
         for i in range(n):
-            group, cell = group_of[tally.source[i]], tally.cell[i]
+            group, cell = group_of[arrivals[i].source], arrivals[i].cell
             total = totals.cell_block[group, cell]
             totals.cell_block_square[group, cell] += total * total
             totals.cell_block[group, cell] = 0.0
@@ -255,15 +249,10 @@ def merge_block(block, tally, group_of, tags_part, totals, ledger, tag_repeats, 
 @kernel
 def _merge_lost(tally, totals):
     """Append the rays that the block lost, as far as there is room."""
-    for i in range(min(tally.used[3], LOST_KEPT)):
-        n = totals.lost_count[0] + i
-        if n < LOST_KEPT:
-            totals.lost_ray[n] = tally.lost_ray[i]
-            totals.lost_reason[n] = tally.lost_reason[i]
-            totals.lost_weight[n] = tally.lost_weight[i]
-            put(totals.lost_place, n, take(tally.lost_place, i))
-            totals.lost_tag[n] = tally.lost_tag[i]
-    totals.lost_count[0] += tally.used[3]
+    before, lost = totals.lost_count[0], tally.used[LOSSES]
+    for i in range(min(lost, LOST_KEPT, LOST_KEPT - before)):
+        totals.lost[before + i] = tally.lost[i]
+    totals.lost_count[0] = before + lost
 
 
 def new_ledger(n_detectors: int, n_groups: int, paths_max: int) -> Ledger:

@@ -20,19 +20,27 @@ from lumentrace.world.arrays import DRY
 HITS_MAX = 24  # bodies (from either side) and detectors that may meet in one place
 
 
-class Hits(NamedTuple):
-    """Scratch of one thread: the hits of one event, nearest first once `hit_set` returns."""
+HIT = np.dtype(
+    [
+        ("prim", "i4"),  # face, or n_faces + detector
+        ("owner", "i4"),  # body, or -1 - detector
+        ("front", "?"),  # hit from the side of the normal
+        ("crossed", "?"),  # a transparent body is entered or left here
+        ("t", "f8"),  # distance
+        ("u", "f8"),  # weight of the second corner | share across
+        ("v", "f8"),  # weight of the third corner | share up
+        ("reach", "f8"),
+    ],
+    align=True,
+)  # fmt: skip
+NODE = np.dtype([("index", "i4"), ("t", "f8")], align=True)  # to visit, and where the ray enters
 
-    prim: np.ndarray  # (HITS_MAX,) int32 face, or n_faces + detector
-    owner: np.ndarray  # (HITS_MAX,) int32 body, or -1 - detector
-    front: np.ndarray  # (HITS_MAX,) bool: hit from the side of the normal
-    t: np.ndarray  # (HITS_MAX,) float64 distance
-    u: np.ndarray  # (HITS_MAX,) float64 weight of the second corner | share across
-    v: np.ndarray  # (HITS_MAX,) float64 weight of the third corner | share up
-    reach: np.ndarray  # (HITS_MAX,) float64
-    crossed: np.ndarray  # (HITS_MAX,) bool: a transparent body is entered or left here
-    node: np.ndarray  # (STACK_DEPTH,) int32 nodes still to visit
-    node_t: np.ndarray  # (STACK_DEPTH,) float64 where the ray enters them
+
+class Hits(NamedTuple):
+    """Scratch of one thread."""
+
+    hit: np.ndarray  # (HITS_MAX,) HIT: those of one event, nearest first, once `hit_set` returns
+    node: np.ndarray  # (STACK_DEPTH,) NODE: still to visit
 
 
 class Leaving(NamedTuple):
@@ -48,18 +56,7 @@ NOWHERE = Leaving(-1, 1.0, False)
 
 def new_hits() -> Hits:
     """Empty scratch for `hit_set`."""
-    return Hits(
-        np.empty(HITS_MAX, np.int32),
-        np.empty(HITS_MAX, np.int32),
-        np.empty(HITS_MAX, np.bool_),
-        np.empty(HITS_MAX),
-        np.empty(HITS_MAX),
-        np.empty(HITS_MAX),
-        np.empty(HITS_MAX),
-        np.empty(HITS_MAX, np.bool_),
-        np.empty(STACK_DEPTH, np.int32),
-        np.empty(STACK_DEPTH),
-    )
+    return Hits(np.zeros(HITS_MAX, HIT), np.zeros(STACK_DEPTH, NODE))
 
 
 @kernel
@@ -140,14 +137,9 @@ def _meet(mesh, detectors, origin, direction, sheared, leaving, prim):
 
 
 @kernel
-def _copy(hits, source, target):
-    hits.prim[target] = hits.prim[source]
-    hits.owner[target] = hits.owner[source]
-    hits.front[target] = hits.front[source]
-    hits.t[target] = hits.t[source]
-    hits.u[target] = hits.u[source]
-    hits.v[target] = hits.v[source]
-    hits.reach[target] = hits.reach[source]
+def _after(hit, t, prim):
+    """Whether a hit comes after one at t on a primitive, in the order of an event."""
+    return hit.t > t or (hit.t == t and hit.prim > prim)
 
 
 @kernel
@@ -160,30 +152,27 @@ def _insert(hits, count, t_far, prim, owner, front, t, u, v, reach):
     kept = 0
     superseded = False
     for i in range(count):
-        if hits.t[i] > t_far + hits.reach[i]:
+        hit = hits[i]
+        if hit.t > t_far + hit.reach:
             continue
-        if hits.owner[i] == owner and hits.front[i] == front:
-            if (hits.t[i], hits.prim[i]) > (t, prim):
+        if hit.owner == owner and hit.front == front:
+            if _after(hit, t, prim):
                 continue
             superseded = True
         if kept != i:
-            _copy(hits, i, kept)
+            hits[kept] = hit
         kept += 1
     if superseded:
         return kept
     if kept == HITS_MAX:
         return -1
     place = kept
-    while place > 0 and (hits.t[place - 1], hits.prim[place - 1]) > (t, prim):
-        _copy(hits, place - 1, place)
+    while place > 0 and _after(hits[place - 1], t, prim):
+        hits[place] = hits[place - 1]
         place -= 1
-    hits.prim[place] = prim
-    hits.owner[place] = owner
-    hits.front[place] = front
-    hits.t[place] = t
-    hits.u[place] = u
-    hits.v[place] = v
-    hits.reach[place] = reach
+    hit = hits[place]
+    hit.prim, hit.owner, hit.front = prim, owner, front
+    hit.t, hit.u, hit.v, hit.reach = t, u, v, reach
     return kept + 1
 
 
@@ -207,13 +196,13 @@ def hit_set(mesh, tree, detectors, origin, direction, leaving, skipped, n_skippe
     inverse = 1.0 / direction[0], 1.0 / direction[1], 1.0 / direction[2]
     count = 0
     t_far = inf
+    nodes = hits.node
+    nodes[0].index, nodes[0].t = 0, 0.0
     waiting = 1
-    hits.node[0] = 0
-    hits.node_t[0] = 0.0
     while waiting > 0:
         waiting -= 1
-        node = hits.node[waiting]
-        if hits.node_t[waiting] > t_far:
+        node = nodes[waiting].index
+        if nodes[waiting].t > t_far:
             continue
         first = tree.child[node]
         if tree.count[node] == 0:
@@ -222,8 +211,7 @@ def hit_set(mesh, tree, detectors, origin, direction, leaving, skipped, n_skippe
             near, far = (first, first + 1) if left <= right else (first + 1, first)
             for child, t_child in ((far, max(left, right)), (near, min(left, right))):
                 if t_child < inf:
-                    hits.node[waiting] = child
-                    hits.node_t[waiting] = t_child
+                    nodes[waiting].index, nodes[waiting].t = child, t_child
                     waiting += 1
             continue
         for i in range(first, first + tree.count[node]):
@@ -235,14 +223,14 @@ def hit_set(mesh, tree, detectors, origin, direction, leaving, skipped, n_skippe
             )
             if t == inf or t > t_far + reach:
                 continue
-            if count == 0 or t < hits.t[0]:
+            if count == 0 or t < hits.hit[0].t:
                 t_far = t + reach + _widest_gap(mesh, prim) / abs(cosine)
             n_faces = len(mesh.body)
             owner = mesh.body[prim] if prim < n_faces else n_faces - prim - 1
-            count = _insert(hits, count, t_far, prim, owner, cosine < 0.0, t, u, v, reach)
+            count = _insert(hits.hit, count, t_far, prim, owner, cosine < 0.0, t, u, v, reach)
             if count < 0:
                 return -1
-    return _one_event(mesh, detectors, direction, hits, count)
+    return _one_event(mesh, detectors, direction, hits.hit, count)
 
 
 @kernel
@@ -250,26 +238,27 @@ def _one_event(mesh, detectors, direction, hits, count):
     """Keep the hits that belong to the event of the nearest; returns their number."""
     kept = min(count, 1)
     for i in range(1, count):
-        behind = hits.t[i] - hits.t[0] - hits.reach[0] - hits.reach[i]
+        nearest, hit = hits[0], hits[i]
+        behind = hit.t - nearest.t - nearest.reach - hit.reach
         if behind > 0.0:
-            row = find_pair(mesh, hits.prim[0], hits.prim[i])
-            cosine = abs(cosine_of(mesh, detectors, hits.prim[0], direction))
+            row = find_pair(mesh, nearest.prim, hit.prim)
+            cosine = abs(cosine_of(mesh, detectors, nearest.prim, direction))
             if row < 0 or behind > mesh.pair_gap[row] / cosine:
                 continue
-        _copy(hits, i, kept)
+        if kept != i:
+            hits[kept] = hit
         kept += 1
     return kept
 
 
 @kernel
-def point_of(mesh, hits, i):
-    """Where hit i lies on its face, kept off the face's edges by the error of the intersection."""
-    face = hits.prim[i]
-    u, v = drawn_back(hits.u[i], hits.v[i], mesh.margin[face])
+def point_of(mesh, hit):
+    """Where a hit lies on its face, kept off the face's edges by the error of the intersection."""
+    u, v = drawn_back(hit.u, hit.v, mesh.margin[hit.prim])
     w = 1.0 - u - v
-    a = take(mesh.vertex, mesh.corner[face, 0])
-    b = take(mesh.vertex, mesh.corner[face, 1])
-    c = take(mesh.vertex, mesh.corner[face, 2])
+    a = take(mesh.vertex, mesh.corner[hit.prim, 0])
+    b = take(mesh.vertex, mesh.corner[hit.prim, 1])
+    c = take(mesh.vertex, mesh.corner[hit.prim, 2])
     return (
         w * a[0] + u * b[0] + v * c[0],
         w * a[1] + u * b[1] + v * c[1],
@@ -280,6 +269,6 @@ def point_of(mesh, hits, i):
 @kernel
 def closest_hit(mesh, tree, detectors, origin, direction, hits):
     """The nearest primitive ahead and its distance; (-1, inf) where there is none."""
-    if hit_set(mesh, tree, detectors, origin, direction, NOWHERE, hits.prim, 0, hits) == 0:
+    if hit_set(mesh, tree, detectors, origin, direction, NOWHERE, mesh.body, 0, hits) == 0:
         return -1, inf
-    return hits.prim[0], hits.t[0]
+    return hits.hit[0].prim, hits.hit[0].t

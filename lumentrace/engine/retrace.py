@@ -4,10 +4,10 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from lumentrace.engine.block import clear, trace_ray
+from lumentrace.engine.block import trace_rays
 from lumentrace.engine.merge import path_hash
 from lumentrace.engine.query import new_hits
-from lumentrace.engine.state import ARRIVALS, TRAIL, new_ray, new_tally
+from lumentrace.engine.state import ARRIVALS, TRAIL, new_rays, new_tally
 from lumentrace.engine.sums import account_rows
 from lumentrace.world.world import World
 
@@ -43,16 +43,17 @@ def retrace(world: World, ray_number: int) -> Way:
     """Trace ray `ray_number` of the run again and note its way."""
     arrays = world.arrays
     n_tags, n_parts = len(world.tag_names), len(world.part_names)
-    ray, hits = new_ray(n_tags), new_hits()
+    rays, hits = new_rays(), new_hits()
     tally = new_tally(arrays.settings.groups, n_tags, n_parts, _ROOM, _TRAIL_MAX)
-    clear(tally)
-    trace_ray(arrays, account_rows(n_tags, n_parts), ray, ray_number, hits, tally)
+    rows = account_rows(n_tags, n_parts)
+    trace_rays(arrays, rows, ray_number, ray_number + 1, rays, hits, tally)
     arrivals = []
     first = 0
     for i in range(min(int(tally.used[ARRIVALS]), _ROOM)):
-        last = int(tally.last_step[i])
-        d, source = int(tally.detector[i]), int(tally.source[i])
-        digest = path_hash(d, source, tally.step, tally.run, first, last)
-        arrivals.append(Arrival(d, int(digest), int(tally.marks[i])))
-        first = last
+        arrival = tally.arrival[i]
+        digest = path_hash(
+            arrival["detector"], arrival["source"], tally.step, first, arrival["last_step"]
+        )
+        arrivals.append(Arrival(int(arrival["detector"]), int(digest), int(arrival["marks"])))
+        first = arrival["last_step"]
     return Way(tally.trail[: tally.used[TRAIL]].copy(), tuple(arrivals))

@@ -11,10 +11,10 @@ from queue import SimpleQueue
 
 import numpy as np
 
-from lumentrace.engine.block import trace_block
+from lumentrace.engine.block import trace_rays
 from lumentrace.engine.merge import Totals, merge_block, new_ledger
 from lumentrace.engine.query import new_hits
-from lumentrace.engine.state import ARRIVALS, KEYS, STEPS, new_ray, new_tally
+from lumentrace.engine.state import ARRIVALS, KEYS, STEPS, new_rays, new_tally
 from lumentrace.engine.sums import (
     LOST,
     LOST_KEPT,
@@ -25,7 +25,7 @@ from lumentrace.engine.sums import (
     account_rows,
     what_if_keys,
 )
-from lumentrace.world.arrays import BATCHES, ROUND_RAYS, WorldArrays
+from lumentrace.world.arrays import BATCHES, BLOCK_RAYS, ROUND_RAYS, WorldArrays
 from lumentrace.world.world import World
 
 PATHS_MAX = 16384
@@ -39,7 +39,7 @@ class _Worker:
         self.arrays = arrays
         self.n_tags, self.n_parts = len(arrays.tags.part), n_parts
         self.rows = account_rows(self.n_tags, n_parts)
-        self.ray = new_ray(self.n_tags)
+        self.rays = new_rays()
         self.hits = new_hits()
         self._make_room(_ROOM)
 
@@ -50,7 +50,10 @@ class _Worker:
     def trace(self, block: int) -> "_Worker":
         """Trace a block; where the lists were too short, with longer ones again: same numbers."""
         while True:
-            trace_block(self.arrays, self.rows, block, self.ray, self.hits, self.tally)
+            trace_rays(
+                self.arrays, self.rows, block * BLOCK_RAYS, (block + 1) * BLOCK_RAYS,
+                self.rays, self.hits, self.tally,
+            )  # fmt: skip
             used = self.tally.used
             need = max(used[ARRIVALS], used[STEPS] / 8, used[KEYS] / 8)
             if need <= self.room:
@@ -86,11 +89,7 @@ class _Sums:
             what_if=np.zeros(
                 (detectors, groups, BATCHES, what_if_keys(tags, parts), REPEATS_MAX + 2)
             ),
-            lost_ray=np.zeros(LOST_KEPT, np.int64),
-            lost_reason=np.zeros(LOST_KEPT, np.int32),
-            lost_weight=np.zeros(LOST_KEPT),
-            lost_place=np.zeros((LOST_KEPT, 3)),
-            lost_tag=np.zeros(LOST_KEPT, np.int32),
+            lost=np.zeros(LOST_KEPT, LOST),
             lost_count=np.zeros(1, np.int64),
         )
         self.ledger = new_ledger(detectors, groups, PATHS_MAX)
@@ -116,13 +115,6 @@ class _Sums:
         n = int(ledger.rows[0])
         kept = totals.cell_batch.shape[1] > 0 or totals.cell_half.shape[2] == 0
         n_lost = min(int(totals.lost_count[0]), LOST_KEPT)
-        lost = np.zeros(n_lost, LOST)
-        lost["ray"] = totals.lost_ray[:n_lost]
-        lost["reason"] = totals.lost_reason[:n_lost]
-        lost["weight"] = totals.lost_weight[:n_lost]
-        lost["tag"] = totals.lost_tag[:n_lost]
-        for k, axis in enumerate("xyz"):
-            lost[axis] = totals.lost_place[:n_lost, k]
         return Sums(
             rounds=self.blocks // BATCHES,
             emitted=emitted,
@@ -147,7 +139,7 @@ class _Sums:
                 other_count=ledger.other_count,
             ),
             what_if=totals.what_if,
-            lost=lost,
+            lost=totals.lost[:n_lost],
             lost_count=int(totals.lost_count[0]),
         )
 
@@ -198,7 +190,7 @@ def trace_world(
                 sums.add(sums.blocks, worker.tally)
                 idle.put(worker)
                 if progress:
-                    progress(sums.blocks * (ROUND_RAYS // BATCHES), planned * ROUND_RAYS)
+                    progress(sums.blocks * BLOCK_RAYS, planned * ROUND_RAYS)
                 if enough and sums.blocks == look * BATCHES:
                     if enough(sums.taken()):
                         break

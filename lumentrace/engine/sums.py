@@ -124,7 +124,15 @@ class Sums:
 
 
 LOST = np.dtype(
-    [("ray", "i8"), ("reason", "i4"), ("weight", "f8"), ("x", "f8"), ("y", "f8"), ("z", "f8"),
-     ("tag", "i4")]
+    [
+        ("ray", "i8"),
+        ("reason", "i4"),  # index in REASONS
+        ("weight", "f8"),
+        ("x", "f8"),
+        ("y", "f8"),
+        ("z", "f8"),
+        ("tag", "i4"),  # of the face where it was lost, -1: none
+    ],
+    align=True,
 )  # fmt: skip
 LOST_KEPT = 1000

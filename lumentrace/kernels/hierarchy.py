@@ -18,9 +18,8 @@ _DEPTH_MAX = 90
 def enters_box(lower, upper, node, origin, inverse, t_far):
     """Smallest t >= 0 at which the ray is inside the box, or inf when it misses it up to t_far.
 
-    lower, upper: (N, 3), box `node` is meant: a row by number, since a view of it would cost more than
-    the test. inverse: the reciprocals of the direction. Boxes are padded by more than the rounding of this
-    test when the hierarchy is built.
+    lower, upper: (N, 3) of all boxes; inverse: the reciprocals of the direction. Boxes are padded
+    by more than the rounding of this test when the hierarchy is built.
     """
     near, far = 0.0, t_far
     for k in range(3):

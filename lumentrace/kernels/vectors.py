@@ -83,3 +83,15 @@ def put(array, row, vector):
 def take(array, row):
     """array[row] as three floats, for (n, 3) arrays."""
     return array[row, 0], array[row, 1], array[row, 2]
+
+
+@kernel
+def vector(array):
+    """A (3,) array as three floats."""
+    return array[0], array[1], array[2]
+
+
+@kernel
+def set_vector(array, x):
+    """array[:] = x for a (3,) array and three floats."""
+    array[0], array[1], array[2] = x

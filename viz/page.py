@@ -1,0 +1,83 @@
+"""The sheet of a picture: title, frame, legend, labels; the look that all pictures share."""
+
+import os
+from pathlib import Path
+
+import numpy as np
+from matplotlib.backends.backend_agg import FigureCanvasAgg
+from matplotlib.figure import Figure
+from matplotlib.patheffects import withStroke
+
+from lumentrace.errors import UserError
+
+WIDTH = 1600
+LINE = 24  # height of a line of text
+INK, FAINT, NOT_HIT = "#111827", "#6b7280", "#d1d5db"
+MAP_COLOURS = "inferno"  # perceptually uniform; dark is dark
+HALO = [withStroke(linewidth=3, foreground="white")]
+_DPI = 100
+_SIDE = 40
+
+
+class Page:
+    """A figure measured in pixels from its lower left corner."""
+
+    def __init__(self, height: int, title: str, subtitle: str):
+        self.height = height
+        self.figure = Figure(figsize=(WIDTH / _DPI, height / _DPI), dpi=_DPI, facecolor="white")
+        FigureCanvasAgg(self.figure)
+        self.sheet = self.axes(0, 0, WIDTH, height)
+        self.sheet.set(xlim=(0, WIDTH), ylim=(0, height))
+        self.sheet.axis("off")
+        self.text(_SIDE, height - 46, fitting(title, 100), size=17, weight="bold")
+        self.text(_SIDE, height - 76, subtitle, size=11, color=FAINT)
+
+    def axes(self, x: float, y: float, width: float, height: float):
+        """A frame at this place."""
+        size = np.array([WIDTH, self.height] * 2)
+        return self.figure.add_axes(tuple(np.array([x, y, width, height]) / size))
+
+    def text(self, x: float, y: float, text: str, size: float = 11, color: str = INK, **keys):
+        keys = {"va": "baseline", "parse_math": False, **keys}
+        return self.sheet.text(x, y, text, size=size, color=color, **keys)
+
+    def scale_bar(self, place, scale, label: str):
+        """Colours of a map with their unit; place: x, y, width, height."""
+        axes = self.axes(*place)
+        bar = self.figure.colorbar(scale, cax=axes)
+        bar.outline.set_edgecolor(FAINT)
+        axes.tick_params(labelsize=10, color=FAINT, labelcolor=INK)
+        axes.set_title(label, size=11, color=INK, loc="left", pad=10)
+
+    def save(self, path: Path) -> Path:
+        """Write under a temporary name, then move: whole or not at all. Raises UserError."""
+        aside = path.with_name(f".{path.name}.{os.getpid()}.part")
+        try:
+            self.figure.savefig(aside, format="png", metadata={"Software": None})
+            aside.replace(path)
+        except OSError as error:
+            raise UserError(f"{path}: cannot be written: {error.strerror or error}") from error
+        finally:
+            aside.unlink(missing_ok=True)
+        return path
+
+
+def fitting(text: str, most: int) -> str:
+    """Text of at most so many letters, its middle left out where it is longer."""
+    if len(text) <= most:
+        return text
+    half = (most - 3) // 2
+    return f"{text[:half]} … {text[-half:]}"
+
+
+def spread(places: np.ndarray, gap: float) -> np.ndarray:
+    """Ascending places moved apart until neighbours differ by `gap`, about where they were."""
+    order = np.argsort(places, kind="stable")
+    moved = places[order].astype(float)
+    for _ in range(100):
+        short = np.maximum(gap - np.diff(moved), 0.0) / 2.0
+        moved[:-1] -= short
+        moved[1:] += short
+    back = np.empty_like(moved)
+    back[order] = moved
+    return back
