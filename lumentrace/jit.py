@@ -16,7 +16,13 @@ import numba
 import numpy
 
 
-COMPILED = ("jit.py", "kernels", "models", "engine", "world/arrays.py")  # all that kernels depend on
+COMPILED = (
+    "jit.py",
+    "kernels",
+    "models",
+    "engine",
+    "world/arrays.py",
+)  # all that kernels depend on
 
 
 def _digest() -> str:

@@ -6,7 +6,6 @@ from pathlib import Path
 import numpy as np
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
-from matplotlib.patheffects import withStroke
 
 from lumentrace.errors import UserError
 
@@ -14,7 +13,6 @@ WIDTH = 1600
 LINE = 24  # height of a line of text
 INK, FAINT, NOT_HIT = "#111827", "#6b7280", "#d1d5db"
 MAP_COLOURS = "inferno"  # perceptually uniform; dark is dark
-HALO = [withStroke(linewidth=3, foreground="white")]
 _DPI = 100
 _SIDE = 40
 

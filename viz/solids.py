@@ -63,6 +63,21 @@ def cap(mesh: pyvista.PolyData, plane: Plane) -> tuple[pyvista.PolyData, pyvista
     return (outline.triangulate_contours() if outline.n_cells else outline), outline
 
 
+def anchor(world: World, part: int, view: View, plane: Plane | None) -> np.ndarray | None:
+    """(3,) the middle of the largest triangle of a part, or of its cut, that one sees; or None."""
+    mesh = part_mesh(world, part)
+    surface = mesh if plane is None else cap(mesh, plane)[0]
+    if not surface.n_cells:
+        return None
+    corner = surface.points[surface.regular_faces].astype(float)
+    middle = corner.mean(axis=1)
+    flat = view.project(middle)
+    inside = (flat > view.low).all(axis=1) & (flat < view.high).all(axis=1)
+    across = np.cross(corner[:, 1] - corner[:, 0], corner[:, 2] - corner[:, 0])
+    area = np.where(inside, np.abs(across @ view.toward), 0.0)
+    return middle[area.argmax()] if area.any() else None
+
+
 def shaded(
     world: World, view: View, plane: Plane, cut: set[int], maps: list[Sheet], size: tuple[int, int]
 ) -> np.ndarray:

@@ -7,6 +7,7 @@ import numpy as np
 from lumentrace.analysis.ledger import PathRow, paths
 from lumentrace.engine.merge import path_hash
 from lumentrace.engine.retrace import retrace
+from lumentrace.engine.state import STEP
 from lumentrace.models.events import EVENTS
 from lumentrace.run.run import Run
 from lumentrace.world.world import World
@@ -36,13 +37,10 @@ def _ways(world: World, row: PathRow):
 
 def _hash(world: World, row: PathRow) -> int:
     """What the engine calls this path."""
-    places, events = zip(*row.steps, strict=True) if row.steps else ((), ())
-    names = [event.partition(" x") for event in events]
-    steps = [
-        (world.tag_names.index(place) << 4) | EVENTS.index(name)
-        for place, (name, _, _) in zip(places, names, strict=True)
-    ]
-    runs = [int(run.rstrip("+") or 1) for _, _, run in names]
+    steps = np.zeros(len(row.steps), STEP)
+    for step, (place, event) in zip(steps, row.steps, strict=True):
+        name, _, run = event.partition(" x")
+        step["step"] = (world.tag_names.index(place) << 4) | EVENTS.index(name)
+        step["run"] = int(run.rstrip("+") or 1)
     detector, source = world.detector_names.index(row.detector), world.source_names.index(row.source)
-    as_kept = np.array(steps, np.int64), np.array(runs, np.int32)
-    return int(path_hash(detector, source, *as_kept, 0, len(steps)))
+    return int(path_hash(detector, source, steps, 0, len(steps)))

@@ -33,9 +33,7 @@ def start(world, ray, ray_number, hits, tally):
     where = rng.uniforms(seed, key, number, 0, 0, rng.PLACE)
     origin, normal, face = start_of(sources.start[s], world.mesh, sources, s, where)
     whither = rng.uniforms(seed, key, number, 0, 0, rng.DIRECTION)
-    local = pattern_emit(
-        sources.pattern[s], sources.pattern_values[s], whither[0], whither[1]
-    )
+    local = pattern_emit(sources.pattern[s], sources.pattern_values[s], whither[0], whither[1])
     tangent, bitangent = frame(normal[0], normal[1], normal[2])
     direction = to_scene(local, tangent, bitangent, normal[0], normal[1], normal[2])
     begin(ray, tally, origin, direction, face)

@@ -25,7 +25,7 @@ from lumentrace.engine.surface import act, finish_of
 from lumentrace.jit import kernel
 from lumentrace.kernels.vectors import put, set_vector, vector
 from lumentrace.models.dispatch import detector_bin_of, medium_advance
-from lumentrace.world.arrays import DRY, OPAQUE, TRANSPARENT
+from lumentrace.world.arrays import DRY, SHEET, TRANSPARENT
 
 NO_UNIFORMS = (0.0, 0.0, 0.0, 0.0)
 
@@ -114,31 +114,40 @@ def detect(world, tally, rows, ray, ray_number, hits, count):
 def opaque_hit(bodies, hits, count):
     """The hit of the opaque part or sheet that acts, -1: none.
 
-    The first in the file acts; of a closed part the face that is met from outside, since at its
-    outline a face that is turned away may seem nearer.
+    A sheet that lies on an opaque part is met before it; else the first in the file acts. Of a
+    closed part it is the face that is met from outside, since at its outline a face that is turned
+    away may seem nearer.
     """
     best = -1
     for i in range(count):
         body = hits[i].owner
         if body < 0 or bodies.kind[body] == TRANSPARENT:
             continue
-        if best < 0 or body < hits[best].owner:
+        if best < 0:
             best = i
-        elif body == hits[best].owner and hits[i].front > hits[best].front:
-            if bodies.kind[body] == OPAQUE:
-                best = i
+            continue
+        chosen = hits[best].owner
+        is_sheet, was_sheet = bodies.kind[body] == SHEET, bodies.kind[chosen] == SHEET
+        if is_sheet != was_sheet:
+            best = i if is_sheet else best
+        elif body < chosen or (
+            body == chosen and not is_sheet and hits[i].front > hits[best].front
+        ):
+            best = i
     return best
 
 
 @kernel
-def dry_partner(mesh, bodies, hits, count, opaque):
-    """The hit of a clear face that the opaque hit lies dry on, -1: none."""
+def dry_partner(mesh, hits, count, acting, before):
+    """The hit of a face that the acting one lies dry on, -1: none; of several that of `before`."""
+    partner = -1
     for i in range(count):
-        if hits[i].owner >= 0 and bodies.kind[hits[i].owner] == TRANSPARENT:
-            row = find_pair(mesh, hits[opaque].prim, hits[i].prim)
-            if row >= 0 and mesh.pair_kind[row] == DRY:
-                return i
-    return -1
+        if hits[i].owner < 0 or (partner >= 0 and hits[i].owner != before):
+            continue
+        row = find_pair(mesh, hits[acting].prim, hits[i].prim)
+        if row >= 0 and mesh.pair_kind[row] == DRY:
+            partner = i
+    return partner
 
 
 @kernel
@@ -320,7 +329,7 @@ def follow(world, rows, ray, ray_number, scratch, tally):
             return
         n1 = index_of(media, medium)
         if opaque >= 0:
-            partner = dry_partner(mesh, bodies, hits, count, opaque)
+            partner = dry_partner(mesh, hits, count, opaque, before)
             if partner >= 0 and hits[partner].owner == before:
                 set_vector(ray.origin, point_of(mesh, hits[partner]))
                 ray.clear, ray.cover = hits[partner].prim, hits[opaque].prim
@@ -354,7 +363,7 @@ def follow(world, rows, ray, ray_number, scratch, tally):
         leave(ray, face, float(side) if front else -float(side), hits, count, acting)
         if side < 0 and opaque < 0:
             pass_through(ray)
-        if side < 0 and partner >= 0:  # through a sheet that lies dry on a clear face
+        if side < 0 and partner >= 0:  # through a sheet that lies dry on another face
             ray.clear, ray.cover = hits[partner].prim, face
 
 

@@ -73,20 +73,16 @@ def cosine_of(mesh, detectors, prim, direction):
 
 @kernel
 def find_pair(mesh, prim, other):
-    """Row of the contact of two primitives, or -1 where there is none."""
-    for row in range(mesh.pair_first[prim], mesh.pair_first[prim + 1]):
-        if mesh.pair_prim[row] == other:
-            return row
-    return -1
-
-
-@kernel
-def _widest_gap(mesh, prim):
-    """Largest gap of all contacts of a primitive; zero without any."""
-    widest = 0.0
-    for row in range(mesh.pair_first[prim], mesh.pair_first[prim + 1]):
-        widest = max(widest, mesh.pair_gap[row])
-    return widest
+    """Row of the contact of two primitives, or -1 where there is none; rows go by primitive."""
+    first, end = mesh.pair_first[prim], mesh.pair_first[prim + 1]
+    last = end
+    while first < last:
+        middle = (first + last) >> 1
+        if mesh.pair_prim[middle] < other:
+            first = middle + 1
+        else:
+            last = middle
+    return first if first < end and mesh.pair_prim[first] == other else -1
 
 
 @kernel
@@ -224,7 +220,7 @@ def hit_set(mesh, tree, detectors, origin, direction, leaving, skipped, n_skippe
             if t == inf or t > t_far + reach:
                 continue
             if count == 0 or t < hits.hit[0].t:
-                t_far = t + reach + _widest_gap(mesh, prim) / abs(cosine)
+                t_far = t + reach + mesh.widest_gap[prim] / abs(cosine)
             n_faces = len(mesh.body)
             owner = mesh.body[prim] if prim < n_faces else n_faces - prim - 1
             count = _insert(hits.hit, count, t_far, prim, owner, cosine < 0.0, t, u, v, reach)

@@ -31,9 +31,12 @@ class Mesh(NamedTuple):
     closed: np.ndarray  # (B,) bool: the body's surface has no open edge
     pair_first: np.ndarray  # (F + D + 1,) int32 primitives in contact with this one: faces of other
     #   bodies, and detectors that lie on a face; primitive F + d is detector d
-    pair_prim: np.ndarray  # (P,) int32; both directions are listed
+    pair_prim: np.ndarray  # (P,) int32; both directions are listed, in order
     pair_gap: np.ndarray  # (P,) float64 largest distance between the two planes there
-    pair_kind: np.ndarray  # (P,) int32 DRY or OPTICAL (also where a detector is one of the two)
+    widest_gap: np.ndarray  # (F + D,) float64 largest gap of all contacts of a primitive
+    pair_kind: (
+        np.ndarray
+    )  # (P,) int32 DRY (also between opaque faces) or OPTICAL (also of detectors)
 
 
 class Tree(NamedTuple):

@@ -12,7 +12,7 @@ from lumentrace.world.world import ContactFacts
 
 # Further kinds, beside those of the engine's arrays.
 FLUSH = 2  # a face of an opaque part that lies within a transparent one, in a face of that
-NO_LIGHT = 3  # between parts without light inside: no pair for the engine
+NO_LIGHT = 3  # between parts without light inside
 _TAKEN = {
     DRY: "dry",
     OPTICAL: "optical contact",
@@ -87,19 +87,24 @@ def _finish(scene: Scene, built: BuiltPart, tag: str) -> str | None:
 
 
 def pair_table(n_prims: int, a, b, gap, kind):
-    """(pair_first, pair_prim, pair_gap, pair_kind) of `arrays.Mesh`: each pair from both ends.
+    """The `pair_*` and `widest_gap` of `arrays.Mesh` by name: each pair from both ends.
 
-    FLUSH becomes OPTICAL, one event in which the opaque face outranks; NO_LIGHT is left out.
+    FLUSH becomes OPTICAL, one event in which the opaque face outranks. NO_LIGHT becomes DRY: light
+    that a source emits into the gap of two opaque faces, or that a sheet lets through onto one,
+    stays in the gap.
     """
-    lit = kind != NO_LIGHT
-    a, b, gap, kind = a[lit], b[lit], gap[lit], np.where(kind[lit] == FLUSH, OPTICAL, kind[lit])
+    kind = np.where(kind == FLUSH, OPTICAL, np.where(kind == NO_LIGHT, DRY, kind))
     start, end = np.concatenate([a, b]), np.concatenate([b, a])
     order = np.lexsort((end, start))
     first = np.zeros(n_prims + 1, np.int32)
     first[1:] = np.cumsum(np.bincount(start, minlength=n_prims))
-    return (
-        first,
-        end[order].astype(np.int32),
-        np.concatenate([gap, gap])[order],
-        np.concatenate([kind, kind])[order].astype(np.int32),
-    )
+    both = np.concatenate([gap, gap])
+    widest = np.zeros(n_prims)
+    np.maximum.at(widest, start, both)
+    return {
+        "pair_first": first,
+        "pair_prim": end[order].astype(np.int32),
+        "pair_gap": both[order],
+        "widest_gap": widest,
+        "pair_kind": np.concatenate([kind, kind])[order].astype(np.int32),
+    }

@@ -130,7 +130,6 @@ def _on_detectors(face, detector, gap, n_detectors):
 
 def mesh_arrays(whole: Joined, closed, table, size: float) -> Mesh:
     """The mesh as the engine wants it. closed: (B,); size: largest coordinate of the scene."""
-    first, prim, gap, kind = table
     return Mesh(
         vertex=whole.vertex,
         corner=whole.corner.astype(np.int32),
@@ -140,10 +139,7 @@ def mesh_arrays(whole: Joined, closed, table, size: float) -> Mesh:
         body=whole.body.astype(np.int32),
         tag=whole.tag.astype(np.int32),
         closed=closed,
-        pair_first=first,
-        pair_prim=prim,
-        pair_gap=gap,
-        pair_kind=kind,
+        **table,
     )
 
 

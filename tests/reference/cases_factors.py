@@ -15,9 +15,6 @@ VIE_01 = Case(
     source_status="confirmed in part by search",
     expected={
         "F12": 0.38196601125010515,
-        "F21": 0.38196601125010515,
-        "etendue between the discs pi A1 F12": 3.7698534257005853,
-        "mean irradiance on disc 2 for unit exitance of disc 1": 0.38196601125010515,
     },
 )
 
@@ -32,8 +29,6 @@ VIE_02 = Case(
     expected={
         "F12": 0.13393125268149447,
         "F21": 0.03348281317037362,
-        "etendue between the discs pi A1 F12": 0.013218484809086889,
-        "mean irradiance on disc 2 for unit exitance of disc 1": 0.03348281317037362,
     },
 )
 
@@ -58,7 +53,6 @@ VIE_06 = Case(
     source_status="confirmed by search",
     expected={
         "F12": 0.20004377607540316,
-        "F21": 0.20004377607540316,
     },
 )
 
@@ -72,8 +66,6 @@ VIE_08 = Case(
     source_status="confirmed by search",
     expected={
         "F sphere to disc": 0.276393202250021,
-        "flux on the disc for a 1000 lm sphere": 276.39320225002103,
-        "F disc to sphere": 0.044222912360003364,
     },
 )
 
@@ -86,11 +78,8 @@ VIE_10 = Case(
     source_status="confirmed in part by search",
     expected={
         "F element to disc, offset 0 m": 0.2,
-        "irradiance for radiance 1, offset 0 m": 0.6283185307179586,
         "F element to disc, offset 0.3 m": 0.17840395678836335,
-        "irradiance for radiance 1, offset 0.3 m": 0.5604725600176732,
         "F element to disc, offset 1.2 m": 0.04517305613116198,
-        "irradiance for radiance 1, offset 1.2 m": 0.14191534128185784,
         "F element to disc, on axis, element tilted 40 deg": 0.1532088886237956,
     },
 )
@@ -106,9 +95,7 @@ VIE_12 = Case(
     expected={
         "F parallel element to rectangle": 0.12235966164233307,
         "F perpendicular element to rectangle": 0.03671549014143971,
-        "solid angle": 0.4597902575773443,
         "flux on the rectangle from an isotropic 1000 lm point source": 36.588946139465065,
-        "F centred parallel element to the four-fold rectangle (2a x 2b)": 0.4894386465693323,
     },
 )
 
@@ -135,7 +122,6 @@ VIE_16 = Case(
     ),
     source_status="value from memory",
     expected={
-        "F inner to outer": 1.0,
         "F outer to inner": 0.25,
         "F outer to itself": 0.75,
     },
@@ -156,7 +142,6 @@ VIE_17 = Case(
         "horizontal illuminance at 3 m": 42.66924586347916,
         "vertical illuminance (facing the foot point) at 3 m": 64.00386879521875,
         "flux inside radius 3 m": 2797.9011843675935,
-        "mean illuminance of that disc": 98.95551194994908,
     },
 )
 
@@ -175,7 +160,6 @@ VIE_18 = Case(
         "horizontal illuminance at 4 m": 17.855231923240023,
         "vertical illuminance (facing the foot point) at 4 m": 22.31903990405003,
         "flux inside radius 4 m": 1768.5829221883312,
-        "mean illuminance of that disc": 35.184839291772725,
     },
 )
 
@@ -188,7 +172,6 @@ VIE_24 = Case(
         "intensity at phase angle 60 deg (0 = back to the source)": 0.4059985206961529,
         "intensity at phase angle 90 deg (0 = back to the source)": 0.2122065907891938,
         "intensity at phase angle 135 deg (0 = back to the source)": 0.032201589161759754,
-        "total reflected flux": 3.141592653589793,
     },
 )
 
@@ -199,7 +182,6 @@ VIE_25 = Case(
     expected={
         "intensity in every direction": 5.0,
         "total reflected flux": 62.83185307179586,
-        "share reflected into the forward hemisphere (angle from beam < 90 deg)": 0.5,
     },
 )
 
@@ -236,7 +218,6 @@ POS_14 = Case(
     expected={
         "umbra radius (negative: antumbra of that size)": 2.0,
         "penumbra outer radius": 22.0,
-        "umbra length": 66.66666666666667,
         "centre irradiance / unobstructed": 0.0,
     },
 )
@@ -250,8 +231,6 @@ STR_01 = Case(
     source_status="common practice, no source",
     expected={
         "PST (disc, on axis)": 0.00019159854066027403,
-        "PST, if defined with the irradiance ON the disc instead": 0.00022123893805309734,
-        "PST of the 1 cm^2 patch at 25 deg (point limit)": 1.3879824198307916e-05,
     },
 )
 
@@ -260,7 +239,6 @@ STR_03 = Case(
     source="Howell catalogue, element to disc, by subtraction",
     source_status="derived here",
     expected={
-        "detector irradiance, single scatter": 0.001589825119236884,
         "factor detector to ring": 0.03179650238473768,
     },
 )
@@ -271,7 +249,5 @@ STR_05 = Case(
     source_status="derived here",
     expected={
         "PST single scatter at the base centre": 0.0001674034743742738,
-        "depth reached by direct light": 86.60254037844386,
-        "power entering": 1700.4369039695791,
     },
 )

@@ -14,10 +14,8 @@ POS_01 = Case(
     ),
     source_status="value from memory",
     expected={
-        "geometric path": 100.0,
         "optical path length": 151.68,
         "transit time": 0.505950019596557,
-        "c0": 299792458,
     },
 )
 
@@ -30,10 +28,8 @@ POS_03 = Case(
         "incidence angle": 39.52756445860935,
         "refraction angle": 25.10633707631019,
         "optical path A to B (minimum)": 262.1683975395163,
-        "transit time": 0.8744996431481821,
         "optical path with the crossing moved by +1 mm": 262.1776750726726,
         "straight-line crossing, optical path": 264.4070935340259,
-        "by reflection: path to a point at the same height": 233.23807579381202,
     },
 )
 
@@ -91,7 +87,6 @@ IMG_17 = Case(
     source_status="common practice, no source",
     expected={
         "lateral shift (perpendicular to the ray)": 3.344993914872836,
-        "paraxial focus shift t(1-1/n)": 3.4071729957805905,
         "exact focus shift of that ray, plate perpendicular to the axis": 4.730535760468639,
         "optical path inside the plate": 17.14502407947711,
         "transit time inside": 57.189644442213115,
@@ -104,7 +99,6 @@ IMG_18 = Case(
     source_status="common practice, no source",
     expected={
         "lateral shift (perpendicular to the ray)": 0.7259585106002414,
-        "paraxial focus shift t(1-1/n)": 1.378787878787879,
         "exact focus shift of that ray, plate perpendicular to the axis": 1.5463311692242478,
         "optical path inside the plate": 6.023985381244261,
         "transit time inside": 20.093852331816368,
@@ -124,8 +118,6 @@ STR_11 = Case(
         "far-face arrival time": 18.09259591377263,
         "far-face incidence angle outside": 47.937562539408596,
         "far-face power factor (1-R)^2 R, unpolarised": 0.04593585901321702,
-        "delay between the two": 6.065771424865743,
-        "target at 1 m: direct return time": 6.671281903963041,
     },
 )
 
@@ -136,7 +128,6 @@ STR_17 = Case(
     expected={
         "number of reflections": 6,
         "power returned": 1.5625e-08,
-        "grazing angle of the last reflection": 26.0,
     },
 )
 
@@ -147,7 +138,6 @@ STR_18 = Case(
     expected={
         "number of reflections": 9,
         "power returned": 1e-09,
-        "grazing angle of the last reflection": 5.75,
     },
 )
 
@@ -159,10 +149,8 @@ LGT_03 = Case(
     ),
     source_status="value from memory",
     expected={
-        "NA": 1.107008238451729,
         "core-cladding critical angle": 42.092627768041176,
         "largest guided angle to the axis inside": 47.907372231958824,
-        "acceptance half-angle in air": 90.0,
     },
 )
 

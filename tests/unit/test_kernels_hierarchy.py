@@ -54,10 +54,11 @@ def test_random_boxes(n):
     assert deepest <= 4 + 2 * np.log2(n)
 
 
-def test_no_boxes_are_never_entered():
-    tree, _, _ = visited(np.empty((0, 3)), np.empty((0, 3)))
-    assert len(tree[2]) == 1 and tree[3][0] == 0
-    assert enters_box(tree[0], tree[1], 0, (0.0, 0.0, 0.0), (1.0, 2.0, 3.0), inf) == inf
+def test_no_boxes():
+    """One empty node: its box holds nothing."""
+    (lower, upper, _, count, order), _, _ = visited(np.empty((0, 3)), np.empty((0, 3)))
+    assert (lower > upper).all() and len(order) == 0
+    assert count.tolist() == [0]
 
 
 @pytest.mark.parametrize("n", [2, 5, 3000])

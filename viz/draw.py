@@ -1,0 +1,47 @@
+"""All pictures of a run."""
+
+from pathlib import Path
+
+from lumentrace.errors import UserError
+from lumentrace.run.run import Run
+from lumentrace.study import run_name
+from lumentrace.world.world import World
+from lumentrace_viz.probe import make_ready
+
+PATHS, MOST = 6, 10  # paths in a picture: unless asked otherwise, and that can be told apart
+
+
+def draw_run(
+    run: Run,
+    world: World,
+    folder: Path,
+    detector: str | None = None,
+    paths: int | None = None,
+) -> list[Path]:
+    """Draw a run into a folder; return the files, all written whole.
+
+    STEM-scene.png shows everything, STEM-paths-DETECTOR.png a cut with the strongest paths,
+    STEM-map-DETECTOR.png the map; STEM is the run's. detector: only this one. paths: how many of
+    the strongest. Raises UserError: an unknown detector, too many paths, what a picture needs is
+    not installed.
+    """
+    number = PATHS if paths is None else paths
+    if not 1 <= number <= MOST:
+        raise UserError(f"{number} paths cannot be told apart in a picture; allowed: 1 to {MOST}")
+    names = run.detectors if detector is None else (detector,)
+    for name in names:
+        run.detector(name)  # refuses an unknown one
+    make_ready()
+    from lumentrace_viz.map_picture import map_picture
+    from lumentrace_viz.scene_picture import scene_picture, section_picture
+    from lumentrace_viz.ways import strongest
+
+    stem = Path(run_name(run)).stem
+    drawn = {name: strongest(run, world, name, number) for name in names}
+    each = max(1, number // len(names))
+    shown = [path for found in drawn.values() for path in found[:each]][:MOST]
+    pages = {f"{stem}-scene": scene_picture(run, world, shown)}
+    for name in names:
+        pages[f"{stem}-paths-{name}"] = section_picture(run, world, name, drawn[name])
+        pages[f"{stem}-map-{name}"] = map_picture(run, name)
+    return [page.save(folder / f"{file}.png") for file, page in pages.items()]
