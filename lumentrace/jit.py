@@ -15,14 +15,8 @@ from pathlib import Path
 import numba
 import numpy
 
-
-COMPILED = (
-    "jit.py",
-    "kernels",
-    "models",
-    "engine",
-    "world/arrays.py",
-)  # all that kernels depend on
+# Files and folders that compiled code, or what it depends on, stands in.
+COMPILED = ("jit.py", "kernels", "models", "engine", "world/arrays.py")
 
 
 def _digest() -> str:

@@ -9,7 +9,7 @@ from tests.unit.world_study import add_file, binary_stl, built, new_study, told
 from tests.worlds import BOX_SIDES, Mesh, box, cylinder, joined, rectangle, sphere
 
 REAL = (
-    "vertex", "normal", "error", "margin", "pair_gap", "lower", "upper", "lobe_share", "values",
+    "vertex", "normal", "error", "margin", "pair_gap", "widest_gap", "lower", "upper", "lobe_share", "values",
     "place", "size", "pattern_values", "wavelength", "ray_flux", "face_area",
 )  # fmt: skip
 CUBE = box((0, 0, 0), (1, 1, 1))
