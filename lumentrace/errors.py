@@ -1,7 +1,8 @@
 """The one error a user meets, and the notices that do not stop the work."""
 
 import difflib
-from typing import Iterable, Literal, NamedTuple
+from collections.abc import Iterable
+from typing import Literal, NamedTuple
 
 
 class UserError(Exception):

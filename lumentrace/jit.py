@@ -46,10 +46,9 @@ def cache_folder() -> Path | None:
 
     ``LUMENTRACE_CACHE`` names another parent folder.
     """
-    parent = os.environ.get("LUMENTRACE_CACHE") or os.path.join(
-        os.environ.get("XDG_CACHE_HOME") or os.path.expanduser("~/.cache"), "lumentrace"
-    )
-    folder = Path(parent) / f"kernels-{_digest()}"
+    own = os.environ.get("LUMENTRACE_CACHE")
+    shared = Path(os.environ.get("XDG_CACHE_HOME") or "~/.cache").expanduser()
+    folder = (Path(own) if own else shared / "lumentrace") / f"kernels-{_digest()}"
     return folder if _writable(folder) else None
 
 

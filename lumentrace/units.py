@@ -9,6 +9,9 @@ _BYTES = {"B": 1, "KiB": 2**10, "MiB": 2**20, "GiB": 2**30, "TiB": 2**40}
 MEMORY = tuple(_BYTES)
 
 
+AIR_INDEX = 1.00027  # of air at 20 C and 101325 Pa against vacuum; indices and lengths go by air
+
+
 def ratio(unit: str, other: str) -> float:
     """How many `other` are one `unit`, correctly rounded: ratio("in", "mm") is 25.4."""
     return _TENTHS_MM[unit] / _TENTHS_MM[other]

@@ -33,15 +33,16 @@ def draw_run(
         run.detector(name)  # refuses an unknown one
     make_ready()
     from lumentrace_viz.map_picture import map_picture
-    from lumentrace_viz.scene_picture import scene_picture, section_picture
+    from lumentrace_viz.scene_picture import scene_picture, section_picture, stage_of
     from lumentrace_viz.ways import strongest
 
     stem = Path(run_name(run)).stem
     drawn = {name: strongest(run, world, name, number) for name in names}
     each = max(1, number // len(names))
     shown = [path for found in drawn.values() for path in found[:each]][:MOST]
-    pages = {f"{stem}-scene": scene_picture(run, world, shown)}
+    stage = stage_of(run, world)
+    pages = {f"{stem}-scene": scene_picture(stage, shown)}
     for name in names:
-        pages[f"{stem}-paths-{name}"] = section_picture(run, world, name, drawn[name])
+        pages[f"{stem}-paths-{name}"] = section_picture(stage, name, drawn[name])
         pages[f"{stem}-map-{name}"] = map_picture(run, name)
     return [page.save(folder / f"{file}.png") for file, page in pages.items()]

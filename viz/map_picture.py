@@ -2,7 +2,7 @@
 
 import numpy as np
 from matplotlib.cm import ScalarMappable
-from matplotlib.colors import Normalize
+from matplotlib.colors import ListedColormap, Normalize
 
 from lumentrace.analysis.measures import Measure, measures
 from lumentrace.analysis.samples import FEW
@@ -32,13 +32,16 @@ def map_picture(run: Run, name: str) -> Page:
     n_up, n_across = value.shape
     subtitle = (
         f"{name}: {kind} in {n_across} x {n_up} cells of "
-        f"{node.attrs['size'][0] / n_across:g} x {node.attrs['size'][1] / n_up:g} {run.length}; "
+        f"{node.attrs['size'][0] / n_across:.4g} x {node.attrs['size'][1] / n_up:.4g} {run.length}; "
         f"{grouped(run.rays)} rays, seed {run.seed}"
     )
     page = Page(_HEIGHT, run.title, subtitle)
     axes = _frame(page, node, run.length)
     scale = scale_of([value])
-    edges = [np.linspace(-s / 2, s / 2, n + 1) for s, n in zip(node.attrs["size"], (n_across, n_up))]
+    edges = [
+        np.linspace(-s / 2, s / 2, n + 1)
+        for s, n in zip(node.attrs["size"], (n_across, n_up), strict=True)
+    ]
     axes.pcolormesh(*edges, np.ma.array(value, mask=~hit), cmap=MAP_COLOURS, norm=scale.norm)
     _mark_not_hit(axes, edges, hit)
     _write_values(axes, page, node, scale)
@@ -56,9 +59,6 @@ def _frame(page: Page, node, length: str):
     axes = page.axes(x + (width - drawn[0]) / 2, y + (height - drawn[1]) / 2, *drawn)
     axes.set(xlim=(-size[0] / 2, size[0] / 2), ylim=(-size[1] / 2, size[1] / 2))
     axes.set_facecolor(NOT_HIT)
-    axes.tick_params(labelsize=10, color=FAINT, labelcolor=INK)
-    for side in axes.spines.values():
-        side.set_edgecolor(FAINT)
     for axis, word in ((axes.xaxis, "across"), (axes.yaxis, "up")):
         axis.set_label_text(f"{word} ({_direction(node, word)}), {length}", size=11, color=INK)
     return axes
@@ -82,7 +82,8 @@ def _mark_not_hit(axes, edges, hit: np.ndarray) -> None:
     if hit.all():
         return
     missed = np.ma.array(np.zeros(hit.shape), mask=hit)
-    axes.pcolor(*edges, missed, hatch="//", facecolor=NOT_HIT, edgecolor="white", linewidth=0)
+    grey = ListedColormap([NOT_HIT])
+    axes.pcolor(*edges, missed, cmap=grey, hatch="//", edgecolor="white", linewidth=0)
 
 
 def _write_values(axes, page: Page, node, scale) -> None:

@@ -6,14 +6,14 @@ from matplotlib.patheffects import withStroke
 from lumentrace.world.world import World
 from lumentrace_viz.page import FAINT, INK, spread
 from lumentrace_viz.places import detector_corners, source_faces, source_outline
+from lumentrace_viz.solids import GLOW
 from lumentrace_viz.view import View
 from lumentrace_viz.ways import Drawn
 
 COLOURS = (
-    "#e11d48", "#2563eb", "#16a34a", "#f59e0b", "#9333ea",
-    "#0891b2", "#f472b6", "#84cc16", "#7c2d12", "#475569",
+    "#dc2626", "#2563eb", "#15803d", "#9333ea", "#0891b2",
+    "#db2777", "#854d0e", "#65a30d", "#64748b", "#111827",
 )  # fmt: skip
-GLOW = "#ffb000"
 _HALO = [withStroke(linewidth=3.5, foreground="white")]
 _THIN, _THICK = 0.9, 2.6  # lines of a weak path and of the strongest
 _LABEL_GAP = 0.036  # of the height
@@ -29,13 +29,13 @@ def add_ways(axes, view: View, drawn: list[Drawn]) -> None:
         for way in path.ways:
             flat = view.project(way)
             axes.plot(*flat.T, color=COLOURS[i], lw=width, path_effects=halo, zorder=3 + 0.1 * i)
-            axes.plot(*flat[-1], "o", color=COLOURS[i], ms=width + 2, zorder=5)
+            axes.plot(*flat[-1], "o", color=COLOURS[i], ms=width + 1.5, zorder=5)
 
 
 def add_outlines(axes, view: View, world: World) -> None:
     """Detectors, and sources that are no faces of parts."""
     for d in range(len(world.detector_names)):
-        axes.fill(*view.project(detector_corners(world, d)).T, fill=False, ec=INK, lw=1.6)
+        axes.fill(*view.project(detector_corners(world, d)).T, fill=False, ec=INK, lw=2)
     for s in range(len(world.source_names)):
         if not len(source_faces(world, s)):
             flat = view.project(source_outline(world, s))
@@ -43,7 +43,7 @@ def add_outlines(axes, view: View, world: World) -> None:
             axes.plot(*flat.mean(axis=0), "*", color=GLOW, mec="#b45309", ms=16, zorder=6)
 
 
-def add_names(axes, view: View, anchors: dict[str, np.ndarray], column: bool = False) -> None:
+def add_names(axes, view: View, anchors: dict[str, np.ndarray]) -> None:
     """Names at the left and right border, joined by lines to their (3,) anchors."""
     names = list(anchors)
     flat = view.project(np.array([anchors[name] for name in names]))
@@ -66,21 +66,28 @@ def add_names(axes, view: View, anchors: dict[str, np.ndarray], column: bool = F
                 path_effects=_HALO,
                 parse_math=False,
                 zorder=8,
-                arrowprops={"arrowstyle": "-", "color": FAINT, "lw": 0.9, "shrinkA": 4, "shrinkB": 0},
+                arrowprops={
+                    "arrowstyle": "-",
+                    "color": FAINT,
+                    "lw": 0.9,
+                    "shrinkA": 4,
+                    "shrinkB": 0,
+                },
             )
             axes.plot(*flat[i], "o", color=INK, ms=4, zorder=7)
 
 
 def add_scale(axes, view: View, length: str) -> None:
-    """A length to compare with, and the directions of the scene's axes."""
+    """Below the frame: a length to compare with, and the directions of the scene's axes."""
     whole = 0.2 * view.size[0]
     power = 10.0 ** np.floor(np.log10(whole))
     bar = power * max(step for step in (1, 2, 5) if step * power <= whole)
-    x, y = view.low + (0.02, 0.035) * view.size
-    axes.plot([x, x + bar], [y, y], color=INK, lw=3, solid_capstyle="butt")
-    axes.text(x, y + 0.012 * view.size[1], f"{bar:g} {length}", size=11, color=INK)
-    origin, arm = view.low + (0.955, 0.06) * view.size, 0.06 * view.size[1]
+    x, y = view.low - (0.0, 0.05) * view.size
+    look = {"color": INK, "clip_on": False}
+    axes.plot([x, x + bar], [y, y], lw=3, solid_capstyle="butt", **look)
+    axes.text(x, y + 0.012 * view.size[1], f"{bar:g} {length}", size=11, **look)
+    origin, arm = view.low + (0.97, -0.05) * view.size, 0.06 * view.size[1]
     for letter, direction in zip("xyz", np.eye(3), strict=True):
         tip = origin + arm * view.project(direction)
-        axes.plot(*zip(origin, tip, strict=True), color=FAINT, lw=1.4)
-        axes.text(*(origin + 1.35 * (tip - origin)), letter, color=FAINT, ha="center", va="center")
+        axes.plot(*zip(origin, tip, strict=True), lw=1.4, **look)
+        axes.text(*(origin + 1.35 * (tip - origin)), letter, ha="center", va="center", **look)

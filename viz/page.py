@@ -8,13 +8,14 @@ from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 
 from lumentrace.errors import UserError
+from lumentrace.units import plain
 
 WIDTH = 1600
+SIDE = 50  # free at the left and at the right
 LINE = 24  # height of a line of text
 INK, FAINT, NOT_HIT = "#111827", "#6b7280", "#d1d5db"
 MAP_COLOURS = "inferno"  # perceptually uniform; dark is dark
 _DPI = 100
-_SIDE = 40
 
 
 class Page:
@@ -27,13 +28,17 @@ class Page:
         self.sheet = self.axes(0, 0, WIDTH, height)
         self.sheet.set(xlim=(0, WIDTH), ylim=(0, height))
         self.sheet.axis("off")
-        self.text(_SIDE, height - 46, fitting(title, 100), size=17, weight="bold")
-        self.text(_SIDE, height - 76, subtitle, size=11, color=FAINT)
+        self.text(SIDE, height - 46, fitting(title, 100), size=17, weight="bold")
+        self.text(SIDE, height - 76, subtitle, size=11, color=FAINT)
 
     def axes(self, x: float, y: float, width: float, height: float):
         """A frame at this place."""
         size = np.array([WIDTH, self.height] * 2)
-        return self.figure.add_axes(tuple(np.array([x, y, width, height]) / size))
+        axes = self.figure.add_axes(tuple(np.array([x, y, width, height]) / size))
+        axes.tick_params(labelsize=10, color=FAINT, labelcolor=INK)
+        for side in axes.spines.values():
+            side.set_edgecolor(FAINT)
+        return axes
 
     def text(self, x: float, y: float, text: str, size: float = 11, color: str = INK, **keys):
         keys = {"va": "baseline", "parse_math": False, **keys}
@@ -42,9 +47,8 @@ class Page:
     def scale_bar(self, place, scale, label: str):
         """Colours of a map with their unit; place: x, y, width, height."""
         axes = self.axes(*place)
-        bar = self.figure.colorbar(scale, cax=axes)
+        bar = self.figure.colorbar(scale, cax=axes, format=lambda value, _: plain(value))
         bar.outline.set_edgecolor(FAINT)
-        axes.tick_params(labelsize=10, color=FAINT, labelcolor=INK)
         axes.set_title(label, size=11, color=INK, loc="left", pad=10)
 
     def save(self, path: Path) -> Path:

@@ -22,18 +22,25 @@ def detector_corners(world: World, detector: int) -> np.ndarray:
     return corners(table.place[detector], table.size[detector])
 
 
+def detector_grid(world: World, detector: int) -> np.ndarray:
+    """(n_up + 1, n_across + 1, 3) corners of the cells."""
+    table = world.arrays.detectors
+    place, half, cells = table.place[detector], table.size[detector], table.cells[detector]
+    across, up = (np.linspace(-h, h, n + 1) for h, n in zip(half, cells, strict=True))
+    return place[0] + across[None, :, None] * place[2] + up[:, None, None] * place[3]
+
+
 def source_faces(world: World, source: int) -> np.ndarray:
-    """(n, 3, 3) corners of the faces that emit; none for other sources."""
-    table, mesh = world.arrays.sources, world.arrays.mesh
-    own = table.face[table.face_first[source] : table.face_first[source + 1]]
-    return mesh.vertex[mesh.corner[own]]
+    """(n,) faces that emit; none for a point, disc or rectangle."""
+    table = world.arrays.sources
+    return table.face[table.face_first[source] : table.face_first[source + 1]]
 
 
 def source_outline(world: World, source: int) -> np.ndarray:
     """(n, 3) of a disc, a rectangle, a point (n = 1), or the corners of emitting faces."""
     faces = source_faces(world, source)
     if len(faces):
-        return faces.reshape(-1, 3)
+        return world.arrays.mesh.vertex[world.arrays.mesh.corner[faces]].reshape(-1, 3)
     place, size = world.arrays.sources.place[source], world.arrays.sources.size[source]
     if not size.any():
         return place[:1]
@@ -49,15 +56,13 @@ def glowing_parts(world: World) -> set[int]:
     return set(world.arrays.bodies.part[mesh.body[faces]].tolist())
 
 
-def heart(world: World, way: np.ndarray | None) -> np.ndarray:
-    """(3,) where to cut: the middle of the faces that the way starts from, else its first event;
-    without a way the middle of the first source."""
-    mesh, faces = world.arrays.mesh, world.arrays.sources.face
-    start = source_outline(world, 0).mean(axis=0) if way is None else way[0]
+def source_middle(world: World, source: int, near: np.ndarray | None = None) -> np.ndarray:
+    """(3,) of a source; of the copy nearest to a point, of the first without one."""
+    faces, mesh = source_faces(world, source), world.arrays.mesh
     if not len(faces):
-        return start if way is None else way[1]
+        return source_outline(world, source).mean(axis=0)
     centres = mesh.vertex[mesh.corner[faces]].mean(axis=1)
-    body = mesh.body[faces]
-    nearest = body[np.linalg.norm(centres - start, axis=1).argmin()]
-    points = mesh.vertex[mesh.corner[faces[body == nearest]].ravel()]
+    first = 0 if near is None else np.linalg.norm(centres - near, axis=1).argmin()
+    copy = faces[mesh.body[faces] == mesh.body[faces[first]]]
+    points = mesh.vertex[mesh.corner[copy].ravel()]
     return (points.min(axis=0) + points.max(axis=0)) / 2.0

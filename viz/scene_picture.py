@@ -1,181 +1,187 @@
 """The scene as a picture: parts cut open, detectors with their maps, the strongest paths."""
 
+from dataclasses import dataclass
+
 import numpy as np
 from matplotlib.colors import to_rgb
 
-from lumentrace.report.lines import CAUTION
 from lumentrace.run.run import Run
-from lumentrace.units import format_with_error, grouped
+from lumentrace.units import grouped
 from lumentrace.world.arrays import OPAQUE
 from lumentrace.world.world import World
+from lumentrace_viz.legend import legend_height, write_legend
 from lumentrace_viz.map_picture import scale_of
-from lumentrace_viz.marks import COLOURS, add_names, add_outlines, add_scale, add_ways
-from lumentrace_viz.page import FAINT, INK, LINE, NOT_HIT, WIDTH, Page, fitting
+from lumentrace_viz.marks import add_names, add_outlines, add_scale, add_ways
+from lumentrace_viz.page import FAINT, INK, NOT_HIT, SIDE, WIDTH, Page
 from lumentrace_viz.places import (
     detector_corners,
+    detector_grid,
     glowing_parts,
-    heart,
     part_box,
+    source_faces,
+    source_middle,
     source_outline,
 )
-from lumentrace_viz.solids import Sheet, anchor, kind, shaded
+from lumentrace_viz.shade import Sheet, shaded
+from lumentrace_viz.solids import Solid, anchor_of_part, anchor_of_tag, opened, solid
 from lumentrace_viz.view import Plane, View, overview, section
 from lumentrace_viz.ways import Drawn
 
 _HEIGHT, _HEAD = 1000, 110
-_LEFT, _RIGHT, _BELOW = 110, 110, 56  # around the frame
+_LEFT, _RIGHT, _BELOW = SIDE + 60, 110, 66  # around the frame
 _LEAST = 520  # height of the frame
-_LETTERS = 165  # of a path in the legend
 _NUDGE = 1e-6  # of the scene's size: a cut through corners of a mesh has no clean outline
 _LIFT = 1e-3  # of the scene's size: maps are seen before faces that they lie on
 _FACING = 0.2  # cosine of the angle up to which one sees a map
 
 
-def scene_picture(run: Run, world: World, drawn: list[Drawn]) -> Page:
+@dataclass(frozen=True)
+class Stage:
+    """What the pictures of a run share."""
+
+    run: Run
+    world: World
+    solids: list[Solid]  # a part each, whole
+
+    @property
+    def lamps(self) -> list[np.ndarray]:
+        return [source_outline(self.world, s) for s in range(len(self.world.source_names))]
+
+    @property
+    def planes(self) -> list[np.ndarray]:
+        return [detector_corners(self.world, d) for d in range(len(self.world.detector_names))]
+
+    @property
+    def points(self) -> np.ndarray:
+        """(n, 3) of everything."""
+        return np.concatenate([self.world.arrays.mesh.vertex, *self.lamps, *self.planes])
+
+
+def stage_of(run: Run, world: World) -> Stage:
+    return Stage(run, world, [solid(world, part) for part in range(len(world.part_names))])
+
+
+def scene_picture(stage: Stage, drawn: list[Drawn]) -> Page:
     """Everything, seen obliquely from above; opaque parts are cut open."""
-    page, place = _page(run, drawn, "Overview; opaque parts cut open")
-    glowing = glowing_parts(world)
-    cut = {p for p in _parts(world) if kind(world, p) == OPAQUE and p not in glowing}
-    points = np.concatenate(_everything(world))
-    opened = np.concatenate([part_box(world, p) for p in cut]) if cut else points
-    view, plane = overview(points, opened, _heart(world, drawn), place[2] / place[3])
-    axes = _draw(page, place, run, world, drawn, view, plane, cut)
+    page, place = _page(stage.run, drawn, "Overview; opaque parts cut open")
+    world, glowing = stage.world, glowing_parts(stage.world)
+    cut = [p for p, s in enumerate(stage.solids) if s.kind == OPAQUE and p not in glowing]
+    around = np.concatenate([part_box(world, p) for p in cut]) if cut else stage.points
+    view, plane = overview(stage.points, around, _heart(world, drawn), place[2] / place[3])
+    plane = _nudged(plane, stage)
+    shown = [opened(s, plane) if p in cut else s for p, s in enumerate(stage.solids)]
+    axes = _draw(page, place, stage, shown, view, drawn)
+    add_names(axes, view, _anchors(stage, shown, view))
     axes.axis("off")
-    add_scale(axes, view, run.length)
+    add_scale(axes, view, stage.run.length)
     return page
 
 
-def section_picture(run: Run, world: World, detector: str, drawn: list[Drawn]) -> Page:
+def section_picture(stage: Stage, detector: str, drawn: list[Drawn]) -> Page:
     """Square on to a cut through the source of the strongest path, as large as the paths allow."""
-    page, place = _page(run, drawn, f"Paths to {detector}")
-    ways = [way for path in drawn for way in path.ways] or _everything(world)[1:]
+    page, place = _page(stage.run, drawn, f"Strongest paths to {detector}")
+    world = stage.world
+    ways = [way for path in drawn for way in path.ways] or [*stage.lamps, *stage.planes]
     boxes = [part_box(world, p) for p in _touched(world, drawn)]
     view, plane = section(ways, boxes, _heart(world, drawn), place[2] / place[3])
-    axes = _draw(page, place, run, world, drawn, view, plane, set(_parts(world)))
+    shown = [opened(s, _nudged(plane, stage)) for s in stage.solids]
+    axes = _draw(page, place, stage, shown, view, drawn)
+    tags = sorted({name for path in drawn for name, _ in path.row.steps})
+    add_names(axes, view, _anchors(stage, shown, view, tags))
     across, up, toward = ("xyz"[np.abs(v).argmax()] for v in (view.right, view.up, view.toward))
-    axes.set_xlabel(f"{across}, {run.length}", size=11, color=INK)
-    axes.set_ylabel(f"{up}, {run.length}", size=11, color=INK)
-    axes.tick_params(labelsize=10, color=FAINT, labelcolor=INK)
+    axes.set_xlabel(f"{across}, {stage.run.length}", size=11, color=INK)
+    axes.set_ylabel(f"{up}, {stage.run.length}", size=11, color=INK)
     at = plane.point @ np.abs(view.toward) + 0.0
-    note = f"Cut at {toward} = {at:.4g} {run.length}; rays before and behind are projected onto it."
+    note = f"Cut at {toward} = {at:.4g} {stage.run.length}; rays are projected onto the cut."
+    corner = view.project(stage.planes[world.detector_names.index(detector)])
+    if (corner.max(axis=0) < view.low).any() or (corner.min(axis=0) > view.high).any():
+        note += f" They go on to {detector}, which lies outside the frame."
     page.text(place[0] + place[2], place[1] + place[3] + 9, note, size=10, color=FAINT, ha="right")
     return page
 
 
-def _parts(world: World) -> range:
-    return range(len(world.part_names))
-
-
-def _everything(world: World) -> list[np.ndarray]:
-    """Points of all parts, then of each source and detector."""
-    sources = [source_outline(world, s) for s in range(len(world.source_names))]
-    detectors = [detector_corners(world, d) for d in range(len(world.detector_names))]
-    return [world.arrays.mesh.vertex, *sources, *detectors]
-
-
 def _heart(world: World, drawn: list[Drawn]) -> np.ndarray:
-    return heart(world, next((way for path in drawn for way in path.ways), None))
+    """(3,) where to cut: the emitting body that the strongest path starts from, else its first
+    event; without a path the first source."""
+    path = next((path for path in drawn if path.ways), None)
+    if path is None:
+        return source_middle(world, 0)
+    source = world.source_names.index(path.row.source)
+    if len(source_faces(world, source)):
+        return source_middle(world, source, path.ways[0][0])
+    return path.ways[0][1]
+
+
+def _nudged(plane: Plane, stage: Stage) -> Plane:
+    size = np.linalg.norm(np.ptp(stage.world.arrays.mesh.vertex, axis=0))
+    return Plane(plane.point + _NUDGE * size * plane.normal, plane.normal)
 
 
 def _touched(world: World, drawn: list[Drawn]) -> list[int]:
     """Parts that the paths meet or start from."""
-    named = {place.partition(":")[0] for path in drawn for place, _ in path.row.steps}
+    met = {name.partition(":")[0] for path in drawn for name, _ in path.row.steps}
     glowing = glowing_parts(world)
-    return [p for p in _parts(world) if p in glowing or world.part_names[p] in named]
+    return [p for p, name in enumerate(world.part_names) if p in glowing or name in met]
 
 
 def _page(run: Run, drawn: list[Drawn], subject: str) -> tuple[Page, tuple]:
     """A page with its legend, and x, y, width, height of the frame that is left."""
-    below = LINE * (len(drawn) + 2) + 20 + _BELOW
+    below = legend_height(drawn) + _BELOW
     height = max(_HEIGHT, _HEAD + _LEAST + below)
-    subtitle = f"{subject}; {grouped(run.rays)} rays, seed {run.seed}"
-    page = Page(height, run.title, subtitle)
-    _legend(page, drawn)
+    page = Page(height, run.title, f"{subject}; {grouped(run.rays)} rays, seed {run.seed}")
+    write_legend(page, drawn)
     return page, (_LEFT, below, WIDTH - _LEFT - _RIGHT, height - _HEAD - below)
 
 
-def _legend(page: Page, drawn: list[Drawn]) -> None:
-    """Colour, share and steps of each path."""
-    y = 26 + LINE * len(drawn)
-    if drawn:
-        page.text(_LEFT, y, "share of the detector's light", color=FAINT, size=10)
-        page.text(_LEFT + 260, y, "path", color=FAINT, size=10)
-    for i, path in enumerate(drawn):
-        y -= LINE
-        page.sheet.plot([_LEFT, _LEFT + 44], [y + 5] * 2, color=COLOURS[i], lw=4)
-        page.text(_LEFT + 60, y, _share(path))
-        page.text(_LEFT + 260, y, fitting(path.row.text, _LETTERS))
-    nothing = "" if drawn else "No light arrived. "
-    page.text(WIDTH - _RIGHT, 26 + LINE * len(drawn), nothing + CAUTION, color=FAINT, size=10, ha="right")
-
-
-def _share(path: Drawn) -> str:
-    row = path.row
-    error = None if row.share_error is None else 100.0 * row.share_error
-    numbers = [n for n in format_with_error(100.0 * (row.share or 0.0), error) if n]
-    return " ± ".join(numbers) + " %"
-
-
-def _draw(page, place, run, world, drawn, view: View, plane: Plane, cut: set[int]):
-    """Fill the frame: shaded parts and maps, then lines and names over them."""
-    points = np.concatenate(_everything(world))
-    size = np.linalg.norm(np.ptp(points, axis=0))
-    nudged = Plane(plane.point + _NUDGE * size * plane.normal, plane.normal)
-    pixels = int(place[2]), int(place[3])
-    sheets = _sheets(page, place, run, world, view, _LIFT * size)
-    picture = shaded(world, view, nudged, cut, sheets, pixels)
+def _draw(page: Page, place, stage: Stage, shown: list[Solid], view: View, drawn: list[Drawn]):
+    """Axes filled with shaded parts and maps, then lines over them."""
+    sheets = _sheets(page, place, stage, view)
+    picture = shaded(shown, sheets, view, (int(place[2]), int(place[3])))
     axes = page.axes(*place)
     extent = (view.low[0], view.high[0], view.low[1], view.high[1])
-    axes.imshow(picture, extent=extent, aspect="auto", interpolation="antialiased")
-    add_outlines(axes, view, world)
+    axes.imshow(picture, extent=extent, aspect="auto")
+    add_outlines(axes, view, stage.world)
     add_ways(axes, view, drawn)
-    add_names(axes, view, _anchors(world, view, nudged, cut))
     axes.set(xlim=extent[:2], ylim=extent[2:])
-    for side in axes.spines.values():
-        side.set_edgecolor(FAINT)
     return axes
 
 
-def _anchors(world: World, view: View, plane: Plane, cut: set[int]) -> dict[str, np.ndarray]:
-    """A point on each part, source and detector."""
-    found = {}
-    for p, name in enumerate(world.part_names):
-        point = anchor(world, p, view, plane if p in cut else None)
-        if point is not None:
-            found[name] = point
+def _anchors(stage: Stage, shown: list[Solid], view: View, tags=()) -> dict[str, np.ndarray]:
+    """A point on each source, detector, and tag asked for, and on each part without such a tag."""
+    world, found = stage.world, {}
+    for name in tags:
+        part = world.part_names.index(name.partition(":")[0])
+        found[name] = anchor_of_tag(shown[part], world.tag_names.index(name), view)
+    named = {name.partition(":")[0] for name, point in found.items() if point is not None}
+    for name, part in zip(world.part_names, shown, strict=True):
+        if name not in named:
+            found[name] = anchor_of_part(part, view)
     for s, name in enumerate(world.source_names):
-        found[name] = heart(world, source_outline(world, s))
-    for d, name in enumerate(world.detector_names):
-        corner = detector_corners(world, d)
+        found[name] = source_middle(world, s)
+    for name, corner in zip(world.detector_names, stage.planes, strict=True):
         found[name] = corner[view.project(corner)[:, 0].argmax()]
-    return found
+    return {name: point for name, point in found.items() if point is not None}
 
 
-def _sheets(page: Page, place, run: Run, world: World, view: View, lift: float) -> list[Sheet]:
-    """The maps that one sees, smaller ones in front; detectors of one unit share a scale."""
-    table, names = world.arrays.detectors, world.detector_names
+def _sheets(page: Page, place, stage: Stage, view: View) -> list[Sheet]:
+    """The maps that one sees, smaller ones in front, and their scales, one a unit."""
+    table, names = stage.world.arrays.detectors, stage.world.detector_names
+    lift = _LIFT * np.linalg.norm(np.ptp(stage.points, axis=0)) * view.toward
     facing = [d for d in range(len(names)) if abs(table.place[d, 1] @ view.toward) > _FACING]
-    order = sorted(facing, key=lambda d: -np.prod(table.size[d]))
-    units = list(dict.fromkeys(run.detector(names[d]).attrs["map_unit"] for d in facing))
+    facing.sort(key=lambda d: -np.prod(table.size[d]))
+    nodes = {d: stage.run.detector(names[d]) for d in facing}
+    units = list(dict.fromkeys(nodes[d].attrs["map_unit"] for d in sorted(facing)))
     sheets = []
     for i, unit in enumerate(units):
-        own = [d for d in order if run.detector(names[d]).attrs["map_unit"] == unit]
-        scale = scale_of([run.detector(names[d])["value"].values for d in own])
-        height = min(300, (place[3] - 60) / len(units) - 60)
-        top = place[1] + place[3] - 40 - i * (height + 60)
-        page.scale_bar((place[0] + place[2] + 16, top - height, 22, height), scale, unit)
+        own = [d for d in facing if nodes[d].attrs["map_unit"] == unit]
+        scale = scale_of([nodes[d]["value"].values for d in own])
+        room = place[3] / len(units)
+        top = place[1] + place[3] - 40 - i * room
+        height = min(300, room - 60)
+        page.scale_bar((place[0] + place[2] + 20, top - height, 22, height), scale, unit)
         for d in own:
-            node = run.detector(names[d])
-            colour = scale.to_rgba(node["value"].values)[..., :3]
-            colour[~(node["effective"].values > 0.0)] = to_rgb(NOT_HIT)
-            raised = lift * (1 + order.index(d)) * view.toward
-            sheets.append(Sheet(_grid(world, d) + raised, (255 * colour).astype(np.uint8)))
+            colour = scale.to_rgba(nodes[d]["value"].values)[..., :3]
+            colour[~(nodes[d]["effective"].values > 0.0)] = to_rgb(NOT_HIT)
+            corner = detector_grid(stage.world, d) + lift * (1 + facing.index(d))
+            sheets.append(Sheet(corner, (255 * colour).astype(np.uint8)))
     return sheets
-
-
-def _grid(world: World, detector: int) -> np.ndarray:
-    """(n_up + 1, n_across + 1, 3) corners of a detector's cells."""
-    table = world.arrays.detectors
-    place, half = table.place[detector], table.size[detector]
-    across, up = (np.linspace(-h, h, n + 1) for h, n in zip(half, table.cells[detector], strict=True))
-    return place[0] + across[None, :, None] * place[2] + up[:, None, None] * place[3]

@@ -12,6 +12,8 @@ from lumentrace.models.events import EVENTS
 from lumentrace.run.run import Run
 from lumentrace.world.world import World
 
+_WAYS = 4  # of a path, more hide one another
+
 
 @dataclass(frozen=True)
 class Drawn:
@@ -29,7 +31,7 @@ def strongest(run: Run, world: World, detector: str, number: int) -> list[Drawn]
 
 def _ways(world: World, row: PathRow):
     detector, path = world.detector_names.index(row.detector), _hash(world, row)
-    for ray in row.rays:
+    for ray in row.rays[:_WAYS]:
         way = retrace(world, ray).up_to(detector, path)
         if way is not None:
             yield way
@@ -42,5 +44,8 @@ def _hash(world: World, row: PathRow) -> int:
         name, _, run = event.partition(" x")
         step["step"] = (world.tag_names.index(place) << 4) | EVENTS.index(name)
         step["run"] = int(run.rstrip("+") or 1)
-    detector, source = world.detector_names.index(row.detector), world.source_names.index(row.source)
+    detector, source = (
+        world.detector_names.index(row.detector),
+        world.source_names.index(row.source),
+    )
     return int(path_hash(detector, source, steps, 0, len(steps)))

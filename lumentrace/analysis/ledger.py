@@ -7,9 +7,9 @@ import numpy as np
 from lumentrace.analysis.statistics import jackknife
 from lumentrace.run.estimate import effective_number, standard_error
 from lumentrace.run.run import Run
+from lumentrace.units import AIR_INDEX
 
 LIGHT_SPEED = 299_792_458.0  # m/s in vacuum, exact (SI)
-AIR_INDEX = 1.00027  # of air at 20 C and 101325 Pa: lengths are relative to air
 OTHER = "other"  # in place of a path: those that found the table full or were too long for it
 BEYOND = 3  # code of a run that long or longer
 

@@ -14,9 +14,7 @@ from lumentrace.cli.words import (
     top_option,
     tracing_options,
 )
-from lumentrace.errors import UserError, nearest
-
-PICTURES = ("pyvista", "vtk", "matplotlib")  # what only the extra of that name installs
+from lumentrace.errors import nearest
 
 
 class Verbs(click.Group):
@@ -157,26 +155,13 @@ def draw(subject, detector, top, as_json):
         found = study.find_run(subject)
         world = study.world_of(found)
         bar.stage("Drawing")
-        files = _draw(found, world, detector, top)
+        from lumentrace_viz.draw import draw_run
+
+        files = draw_run(found.run, world, found.path.parent, detector=detector, paths=top)
     if as_json:
         show_json({"file": str(found.path), "pictures": [str(file) for file in files]})
     else:
         show("\n".join(f"Written: {shown_path(file)}" for file in files))
-
-
-def _draw(found, world, detector, top):
-    """Draw, or say which extra is not installed."""
-    try:
-        from lumentrace_viz.draw import draw_run
-
-        return draw_run(found.run, world, found.path.parent, detector=detector, paths=top)
-    except ModuleNotFoundError as error:
-        if error.name not in PICTURES:
-            raise
-        raise UserError(
-            f"draw needs {error.name}, which is not installed; where pyproject.toml lies, type: "
-            'pip install ".[pictures]"'
-        ) from error
 
 
 @lumentrace.command(

@@ -21,13 +21,14 @@ from lumentrace.engine.sums import (
     TOO_DEEP,
     TOO_MANY_AT_ONCE,
 )
-from lumentrace.engine.surface import act, finish_of
+from lumentrace.engine.surface import UNCOATED, act, finish_of
 from lumentrace.jit import kernel
 from lumentrace.kernels.vectors import put, set_vector, vector
 from lumentrace.models.dispatch import detector_bin_of, medium_advance
 from lumentrace.world.arrays import DRY, SHEET, TRANSPARENT
 
 NO_UNIFORMS = (0.0, 0.0, 0.0, 0.0)
+HOPS_PER_EVENT = 16  # queries, with those that end at detectors that let pass and hidden surfaces
 
 
 @kernel
@@ -207,11 +208,12 @@ def acting_hit(world, hits, count, before, behind):
             chosen = i
         elif hits[i].crossed and (hits[i].owner == before or hits[i].owner == behind):
             other = i
+    if other < 0:
+        return chosen
     tag = world.mesh.tag
-    if other >= 0 and finish_of(world.tags, tag[hits[chosen].prim], hits[chosen].front) == 0:
-        if finish_of(world.tags, tag[hits[other].prim], hits[other].front) != 0:
-            return other
-    return chosen
+    plain = finish_of(world.tags, tag[hits[chosen].prim], hits[chosen].front) == UNCOATED
+    named = finish_of(world.tags, tag[hits[other].prim], hits[other].front) != UNCOATED
+    return other if plain and named else chosen
 
 
 @kernel
@@ -274,10 +276,9 @@ def follow(world, rows, ray, ray_number, scratch, tally):
     hits = scratch.hit
     factor = 1.0
     mark(tally, vector(ray.origin))
-    while True:
+    for _ in range(HOPS_PER_EVENT * world.settings.events_max):
         if ray.events >= world.settings.events_max:
-            lose(tally, rows, ray, ray_number, CUT_OFF, -1)
-            return
+            break
         if ray.clear >= 0:
             if not act_in_gap(world, rows, ray, tally, factor):
                 return
@@ -365,6 +366,7 @@ def follow(world, rows, ray, ray_number, scratch, tally):
             pass_through(ray)
         if side < 0 and partner >= 0:  # through a sheet that lies dry on another face
             ray.clear, ray.cover = hits[partner].prim, face
+    lose(tally, rows, ray, ray_number, CUT_OFF, -1)
 
 
 @kernel

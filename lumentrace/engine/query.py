@@ -86,13 +86,29 @@ def find_pair(mesh, prim, other):
 
 
 @kernel
+def _is_concave(mesh, face, side, other):
+    """Whether two faces that join stand in a hollow, seen from that side of `face`.
+
+    They do if the middle of `face` lies on that side of the plane of `other`.
+    """
+    height = 0.0
+    corner = mesh.corner[other, 0]
+    for i in range(3):
+        vertex = mesh.corner[face, i]
+        for k in range(3):
+            height += (mesh.vertex[vertex, k] - mesh.vertex[corner, k]) * mesh.normal[other, k]
+    return height * side > 0.0
+
+
+@kernel
 def _start(mesh, leaving, prim, t, cosine, reach):
     """Distance at which a ray that leaves a face meets a primitive, or inf where it does not.
 
     Ahead is ahead, but what is in contact with the face belongs to the event that is over. A closed
     body is met next on the side on which the ray left it; by rounding, a ray that just clears a
-    convex edge seems to come to the face behind it from within. A face of the same body that lies
-    behind by no more than the error of its distance stands at a concave edge, and is met here.
+    convex edge seems to come to the face behind it from within. A face of the same body that seems
+    to lie behind, by no more than the error of its distance, is met here if it stands at a concave
+    edge or corner.
     """
     if leaving.face < 0:
         return t if t > 0.0 else inf
@@ -106,7 +122,8 @@ def _start(mesh, leaving, prim, t, cosine, reach):
     same_side = cosine * leaving.side < 0.0
     if t > 0.0:
         return t if same_side or not mesh.closed[body] else inf
-    return 0.0 if same_side and t >= -reach else inf
+    here = same_side and t >= -reach and _is_concave(mesh, leaving.face, leaving.side, prim)
+    return 0.0 if here else inf
 
 
 @kernel

@@ -18,6 +18,7 @@ from lumentrace.models.events import (
 ROULETTE_FROM = 8  # surface events; before that no ray is ended by chance
 ROULETTE_LEAST = 0.1  # smallest chance to survive
 N_EVENTS = len(EVENTS)
+UNCOATED = 0  # row of Finishes
 
 
 @kernel
@@ -54,7 +55,7 @@ def take_step(ray, tally, tag, event):
     """Add an event at a tag to the path and to the counts of what was met."""
     code = (tag << 4) | event
     n = ray.n_steps
-    collapses = event == TOTAL or event == MIRROR or event == SCATTER or event == SCATTER_THROUGH
+    collapses = event in (TOTAL, MIRROR, SCATTER, SCATTER_THROUGH)
     if collapses and 0 < n <= STEPS_MAX and ray.step[n - 1] == code:
         ray.run[n - 1] += 1
     elif n >= STEPS_MAX:
@@ -65,7 +66,7 @@ def take_step(ray, tally, tag, event):
         ray.n_steps = n + 1
     if event == REFLECT:
         ray.reflections += 1
-    if event == SCATTER or event == SCATTER_THROUGH:
+    if event in (SCATTER, SCATTER_THROUGH):
         ray.scatters += 1
     key = tag * N_EVENTS + event
     if tally.repeats[ray.branch, key] == 0:

@@ -147,7 +147,7 @@ def build_tree(lower, upper):
             count[node] = members
             continue
         middle = _partition(lower, upper, order, first, last, axis, position)
-        if middle == first or middle == last:  # rounding put every centre on one side
+        if middle in (first, last):  # rounding put every centre on one side
             middle = (first + last) // 2
         child[node] = n_nodes
         todo.append((n_nodes, first, middle, depth + 1))

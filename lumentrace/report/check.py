@@ -104,7 +104,7 @@ def _used_detectors(world: World) -> list[Detector]:
 
 def _ray_shares(world: World) -> np.ndarray:
     """Share of all rays that each source gets, (S,)."""
-    return np.diff(world.arrays.sources.ray_first) / BLOCK_RAYS
+    return np.diff(world.tables.sources.ray_first) / BLOCK_RAYS
 
 
 def _head(world: World) -> list[str]:
@@ -130,6 +130,11 @@ def _size(size, factor: float = 1.0) -> str:
     return " x ".join(_short(factor * float(x)) for x in size)
 
 
+def _table(rows: list[list[str]], align: str, elastic: int = 0) -> list[str]:
+    """A table with its header, or nothing where there is only the header."""
+    return lay_out(rows, align, elastic) if len(rows) > 1 else []
+
+
 def _parts(world: World) -> list[str]:
     study = world.scene.study
     rows = [["part", f"size in {study.length}", "size in m", "faces", "medium"]]
@@ -145,25 +150,23 @@ def _parts(world: World) -> list[str]:
         )
     if study.length == "m":
         rows = [[*row[:2], *row[3:]] for row in rows]
-        return lay_out(rows, "<<><")
-    return lay_out(rows, "<<<><")
+        return _table(rows, "<<><")
+    return _table(rows, "<<<><")
 
 
 def _tags(world: World) -> list[str]:
     rows = [["tag", "faces", f"area {world.scene.study.length}2", "of its part", "finish"]]
     for t in world.tags:
         rows.append([t.name, str(t.faces), _short(t.area), f"{100 * t.share:.3g} %", t.finish])
-    return lay_out(rows, "<>>><")
+    return _table(rows, "<>>><")
 
 
 def _contacts(world: World) -> list[str]:
-    if not world.contacts:
-        return []
     unit = world.scene.study.length
     rows = [["touching", f"area {unit}2", f"gap {unit}", "taken as"]]
     for c in world.contacts:
         rows.append([", ".join(c.parts), _short(c.area), f"{c.gap:.2g}", c.taken])
-    return lay_out(rows, "<>><")
+    return _table(rows, "<>><")
 
 
 def _flux(watts: float, wavelength: float) -> str:
@@ -192,7 +195,7 @@ def _sources(world: World) -> list[str]:
                 world.source_start[i],
             ]
         )
-    return lay_out(rows, "<<><><", elastic=5)
+    return _table(rows, "<<><><", elastic=5)
 
 
 def _detectors(world: World) -> list[str]:
@@ -211,7 +214,7 @@ def _detectors(world: World) -> list[str]:
                 f"{sides}, {what}",
             ]
         )
-    return lay_out(rows, "<<<<<")
+    return _table(rows, "<<<<<")
 
 
 def _limits(world: World) -> list[str]:
@@ -221,7 +224,7 @@ def _limits(world: World) -> list[str]:
         rows.append(
             [m.measure, limit_text(m.at_least, m.at_most, _unit(m.measure, detectors)), m.note]
         )
-    return lay_out(rows, "<<<", elastic=2) if len(rows) > 1 else []
+    return _table(rows, "<<<", elastic=2)
 
 
 def _unit(measure: str, detectors: dict[str, Detector]) -> str:

@@ -49,6 +49,8 @@ def ledger_text(run: Run, path: Path, detector: str | None, top: int | None) -> 
     ]
     blocks = [opening]
     blocks += [_detector(run, name, top or TOP) for name in _wanted(run, detector)]
+    if not run.detectors:
+        blocks.append(["The scene has no detector."])
     few = any(line.endswith("few") for block in blocks for line in block)
     blocks.append([_FEW, CAUTION] if few else [CAUTION])
     return "\n\n".join("\n".join(block) for block in blocks) + "\n"

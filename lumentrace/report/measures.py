@@ -84,6 +84,8 @@ def measure_lines(
         by_measure.setdefault(limit["measure"], []).append(limit)
     names = [name for name in _paired(measures) if _is_shown(name, by_measure, single_cell)]
     shown = [measures[name] for name in names]
+    if not shown:
+        return []
     with_unseen = any(m.unseen > 0.0 for m in shown)
     rows = [["measure", "value", "error", "unit", "unseen", "limit", "errors away"]]
     for m in shown:

@@ -75,7 +75,7 @@ def _traced(run: Run, world: World, found: dict[str, Measure], asked, seconds) -
             known = f"{100 * measure.error / abs(measure.value):.2g} %"
             sentences.append(f"Not within {goal}: {until.measure} is known within {known}.")
     elif wanted != run.rays:
-        sentences.append(f"Rounded up from {grouped(wanted)} to whole rounds of 65 536.")
+        sentences.append(f"Rounded up from {grouped(wanted)} to whole rounds.")
     return wrap(" ".join(sentences))
 
 

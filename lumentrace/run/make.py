@@ -72,10 +72,10 @@ def _provenance(world: World, sums: Sums) -> dict:
                 for m in limits
             ]
         ),
-        "seed": world.arrays.settings.seed,
+        "seed": world.tables.settings.seed,
         "rays": ROUND_RAYS * sums.rounds,
         "rounds": sums.rounds,
-        "events_max": world.arrays.settings.events_max,
+        "events_max": world.tables.settings.events_max,
         "length": study.length,
         "metre": study.metre,
         "lost_count": sums.lost_count,
@@ -88,7 +88,7 @@ def _units(world: World) -> dict[str, str]:
 
 def flux_units(world: World) -> list[str]:
     """Unit of the flux on each detector."""
-    return ["lm" if p else "W" for p in world.arrays.detectors.photometric]
+    return ["lm" if p else "W" for p in world.tables.detectors.photometric]
 
 
 def _ledger_units(world: World) -> dict[str, str]:
@@ -120,7 +120,7 @@ def _labelled(variable: Variable, value: np.ndarray, units: dict[str, str]) -> x
 
 
 def _sources(world: World) -> dict[str, np.ndarray]:
-    sources = world.arrays.sources
+    sources = world.tables.sources
     return {
         "source": world.source_names,
         "group": world.group_names,
@@ -133,7 +133,7 @@ def _sources(world: World) -> dict[str, np.ndarray]:
 
 
 def _detector(world: World, sums: Sums, scale: Scale, d: int) -> xarray.Dataset:
-    detectors = world.arrays.detectors
+    detectors = world.tables.detectors
     facts = _detector_facts(world, sums, d)
     n_across, n_up = detectors.cells[d]
     cells = slice(detectors.cell_first[d], detectors.cell_first[d + 1])
@@ -174,7 +174,7 @@ def _detector(world: World, sums: Sums, scale: Scale, d: int) -> xarray.Dataset:
 
 
 def _detector_facts(world: World, sums: Sums, d: int) -> dict:
-    detectors = world.arrays.detectors
+    detectors = world.tables.detectors
     photometric = bool(detectors.photometric[d])
     center, normal, across, up = detectors.place[d]
     size = 2.0 * detectors.size[d]
@@ -223,7 +223,7 @@ def _account(world: World, sums: Sums, scale: Scale) -> dict[str, np.ndarray]:
 
 def _filled(world: World) -> np.ndarray:
     """Whether light is absorbed inside: by part, then around all of them. (P + 1,) bool"""
-    bodies, media = world.arrays.bodies, world.arrays.media
+    bodies, media = world.tables.bodies, world.tables.media
     filled = np.zeros(len(world.part_names) + 1, dtype=bool)
     filled[bodies.part[bodies.medium >= 0]] = True
     filled[-1] = media.values[0, 1] > 0.0  # row 0 is what surrounds all parts

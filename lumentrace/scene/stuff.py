@@ -6,11 +6,11 @@ from lumentrace.scene.forms import FinishForm, MediumForm
 from lumentrace.scene.model import OPAQUE, SHEET, UNCOATED, Finish, Medium
 from lumentrace.scene.names import RULE, is_name
 from lumentrace.scene.place import Place
+from lumentrace.units import AIR_INDEX
 
-# Indices are relative to air at 20 C and 101325 Pa.
 BUILT_IN_MEDIA = (
     Medium("air", 1.0, 0.0, place=None),
-    Medium("vacuum", 1 / 1.00027, 0.0, place=None),
+    Medium("vacuum", 1 / AIR_INDEX, 0.0, place=None),
 )
 BUILT_IN_FINISHES = (Finish(UNCOATED, 0.0, 0.0, 0.0, uncoated=True, place=None),)
 

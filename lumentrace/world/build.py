@@ -17,10 +17,11 @@ from lumentrace.world.doubts import detector_doubts, rounding_doubts, stack_doub
 from lumentrace.world.facts import part_facts, tag_facts
 from lumentrace.world.frames import corners, detector_frame, extent, source_frame
 from lumentrace.world.geometry import largest
+from lumentrace.world.hierarchy import NO_TREE
 from lumentrace.world.materials import finish_tables, medium_table
 from lumentrace.world.meshes import MeshFile, part_mesh, read_file
 from lumentrace.world.nesting import ranks
-from lumentrace.world.scene_mesh import Joined, hierarchy, joined, mesh_arrays, touching
+from lumentrace.world.scene_mesh import Joined, joined, mesh_arrays, touching
 from lumentrace.world.sources import Lit, emitting_faces, source_table, watts
 from lumentrace.world.start_media import shown, start_media
 from lumentrace.world.tags import part_tags
@@ -66,9 +67,9 @@ def build_world(scene: Scene) -> World:
         notices += detector_doubts(detector, *frame, mesh, bodies, float(touch.max(initial=0.0)))
     return World(
         scene=scene,
-        arrays=WorldArrays(
+        tables=WorldArrays(
             mesh=mesh,
-            tree=hierarchy(mesh, detector_rows),
+            tree=NO_TREE,
             bodies=Bodies(
                 part=np.array([body.part for body in bodies], np.int32),
                 kind=np.array([parts[body.part].kind for body in bodies], np.int32),

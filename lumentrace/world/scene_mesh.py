@@ -6,7 +6,7 @@ from typing import NamedTuple
 import numpy as np
 
 from lumentrace.scene.model import Scene
-from lumentrace.world.arrays import OPTICAL, Detectors, Mesh, Tree
+from lumentrace.world.arrays import OPTICAL, Detectors, Mesh
 from lumentrace.world.bodies import Body, BuiltPart
 from lumentrace.world.bounds import edge_margin, plane_error
 from lumentrace.world.contacts import (
@@ -17,7 +17,7 @@ from lumentrace.world.contacts import (
 )
 from lumentrace.world.coplanar import Faces, coplanar_pairs
 from lumentrace.world.frames import corners
-from lumentrace.world.geometry import Facets, face_boxes, facets, largest
+from lumentrace.world.geometry import Facets, facets, largest
 
 
 class Joined(NamedTuple):
@@ -140,21 +140,4 @@ def mesh_arrays(whole: Joined, closed, table, size: float) -> Mesh:
         tag=whole.tag.astype(np.int32),
         closed=closed,
         **table,
-    )
-
-
-def hierarchy(mesh: Mesh, detectors: Detectors) -> Tree:
-    """The hierarchy over faces and detectors, each box padded by the error of what it holds."""
-    from lumentrace.kernels.hierarchy import build_tree
-
-    lower, upper = face_boxes(mesh.vertex, mesh.corner)
-    rims = np.array(
-        [corners(p, s) for p, s in zip(detectors.place, detectors.size, strict=True)]
-    ).reshape(-1, 4, 3)
-    pad = np.concatenate([mesh.error, detectors.error])[:, None]
-    return Tree(
-        *build_tree(
-            np.concatenate([lower, rims.min(axis=1)]) - pad,
-            np.concatenate([upper, rims.max(axis=1)]) + pad,
-        )
     )

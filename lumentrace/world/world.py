@@ -1,12 +1,14 @@
 """A scene made ready for tracing: flat arrays, and the names of their rows."""
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from lumentrace.errors import Notice
 from lumentrace.scene.model import Scene
 from lumentrace.world.arrays import WorldArrays
+from lumentrace.world.hierarchy import hierarchy
 
 
 @dataclass(frozen=True)
@@ -48,7 +50,7 @@ class ContactFacts:
 @dataclass(frozen=True)
 class World:
     scene: Scene
-    arrays: WorldArrays
+    tables: WorldArrays  # with an empty hierarchy: see `arrays`
     part_names: tuple[str, ...]
     tag_names: tuple[str, ...]  # "tray:default", row for row with arrays.tags
     body_names: tuple[str, ...]  # "die", or "die (3)" for the third copy
@@ -61,3 +63,11 @@ class World:
     tags: tuple[TagFacts, ...]
     contacts: tuple[ContactFacts, ...]
     notices: tuple[Notice, ...]
+
+    @cached_property
+    def arrays(self) -> WorldArrays:
+        """What the engine traces: the tables, with the hierarchy built.
+
+        At first use only: that takes compiled code, and checking a scene must not wait for it.
+        """
+        return self.tables._replace(tree=hierarchy(self.tables.mesh, self.tables.detectors))

@@ -108,7 +108,7 @@ def test_rays_are_rounded_up_and_it_is_told(rays, tmp_path):
     text = ok("trace", scene.name, "--rays", rays, cwd=tmp_path)
     told = " ".join(text.split())
     assert "131 072 rays in " in told
-    assert "Rounded up from 100 000 to whole rounds of 65 536." in told
+    assert "Rounded up from 100 000 to whole rounds." in told
 
 
 def test_until_ends_the_trace_once_the_measure_is_known(tmp_path):
@@ -130,6 +130,17 @@ def test_until_that_is_not_reached_is_told(tmp_path):
     text = ok("trace", scene.name, cwd=tmp_path)
     assert "131 072 rays" in text
     assert "Not within 0.0001 %: desk.mean is known within " in " ".join(text.split())
+
+
+def test_a_scene_without_detectors_has_its_account(tmp_path):
+    scene = small_scene(tmp_path)
+    detector, limit = SCENE.index("[[detector]]"), SCENE.index("[[limit]]")
+    trace = SCENE.index("[trace]")
+    scene.write_text(SCENE[:detector] + SCENE[trace:limit], encoding="utf-8")
+    text = ok("trace", scene.name, cwd=tmp_path)
+    assert "\n0.1464 W went to" in text and "measure " not in text
+    assert "The scene has no detector." in ok("ledger", scene.name, cwd=tmp_path)
+    assert "detector  " not in ok("check", scene.name, cwd=tmp_path)
 
 
 def test_nothing_is_said_on_standard_error_once_compiled(tmp_path):

@@ -9,6 +9,7 @@ from math import sqrt
 import numpy as np
 import pytest
 
+from lumentrace.analysis.cells import Cells
 from lumentrace.analysis.statistics import no_hit_upper, poisson_bounds, t_bounds
 from lumentrace.run.estimate import block_error, effective_number, standard_error
 
@@ -31,8 +32,6 @@ def test_the_minimum_of_noisy_cells_is_biased_and_its_split_twin_is_not(cells):
 
     64 batches whose mean has 3 % noise; the mean over the cells is exactly 1, as in the case.
     """
-    from lumentrace.analysis.cells import Cells
-
     trials, noise = 2000, 0.03
     rng = np.random.default_rng(cells)
     plain, split = np.empty(trials), np.empty(trials)

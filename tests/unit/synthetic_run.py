@@ -127,7 +127,7 @@ def world(photometric=(True, False), lengths=("mm", 0.001)) -> World:
     ]
     return World(
         scene=scene,
-        arrays=arrays,
+        tables=arrays,
         part_names=PARTS,
         tag_names=TAGS,
         body_names=PARTS,
@@ -154,10 +154,10 @@ class _Toy:
         self.block = self.ray // BLOCK_RAYS
         self.batch = self.block % BATCHES
         self.source = (self.ray % BLOCK_RAYS) // (BLOCK_RAYS // 2)
-        self.weight = of.arrays.sources.ray_flux[self.source]
+        self.weight = of.tables.sources.ray_flux[self.source]
         self.way = self.rng.choice(len(CHANCE), size=self.n, p=chance)
-        efficacy = [683.0 * luminosity(w) for w in of.arrays.sources.wavelength]
-        seen = of.arrays.detectors.photometric[:, None]
+        efficacy = [683.0 * luminosity(w) for w in of.tables.sources.wavelength]
+        seen = of.tables.detectors.photometric[:, None]
         self.response = np.where(seen, efficacy, 1.0)  # (detector, source)
         self.account = np.zeros((self.n, ROWS.count))
         self.arrivals = []  # (rays, detector, cell, amount)

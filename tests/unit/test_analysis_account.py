@@ -82,8 +82,8 @@ def test_lumens_weigh_each_group_by_its_own_wavelength():
 
 def altered(**changes):
     of = world()
-    sources = of.arrays.sources._replace(**changes)
-    of = type(of)(**{**vars(of), "arrays": of.arrays._replace(sources=sources)})
+    sources = of.tables.sources._replace(**changes)
+    of = type(of)(**{**vars(of), "arrays": of.tables._replace(sources=sources)})
     return account(make_run(of, sums(of)))
 
 
@@ -95,11 +95,11 @@ def test_invisible_light_has_no_lumens():
 
 def test_a_group_of_two_wavelengths_has_no_lumens():
     of = world()
-    sources = of.arrays.sources._replace(group=np.array([0, 0], np.int32))
+    sources = of.tables.sources._replace(group=np.array([0, 0], np.int32))
     of = type(of)(
         **{
             **vars(of),
-            "arrays": of.arrays._replace(sources=sources),
+            "arrays": of.tables._replace(sources=sources),
             "group_names": ("both", "none"),
         }
     )

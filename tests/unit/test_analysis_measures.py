@@ -164,8 +164,8 @@ def test_a_passing_detector_that_was_not_hit_has_no_bound():
 def test_the_uniformity_of_a_field_with_a_dark_cell_has_a_bound():
     """A catching desk of which the dark cell was never hit."""
     of = world()
-    catching = of.arrays.detectors._replace(catches=np.array([True, True]))
-    of = type(of)(**{**vars(of), "arrays": of.arrays._replace(detectors=catching)})
+    catching = of.tables.detectors._replace(catches=np.array([True, True]))
+    of = type(of)(**{**vars(of), "arrays": of.tables._replace(detectors=catching)})
     found = sums(of, chance=only(DIRECT))
     found.cell_batch[:, 0], found.cell_half[:, :, 0], found.cell_square[:, 0] = 0, 0, 0
     m = measures(make_run(of, found))
@@ -221,9 +221,33 @@ def test_nothing_lost_is_nothing_unseen():
 def test_invisible_light_is_no_lumens_for_certain():
     """A photometric detector in the dark: the bound on lumens is 0."""
     of = world()
-    sources = of.arrays.sources._replace(wavelength=np.array([940.0, 940.0]))
-    catching = of.arrays.detectors._replace(catches=np.array([True, True]))
-    arrays = of.arrays._replace(sources=sources, detectors=catching)
+    sources = of.tables.sources._replace(wavelength=np.array([940.0, 940.0]))
+    catching = of.tables.detectors._replace(catches=np.array([True, True]))
+    arrays = of.tables._replace(sources=sources, detectors=catching)
     of = type(of)(**{**vars(of), "arrays": arrays})
     m = measures(make_run(of, sums(of, chance=only(DIRECT))))["desk.flux"]
     assert (m.value, m.error, m.upper) == (0.0, None, 0.0)
+
+
+def test_the_error_of_a_uniformity_knows_that_cell_and_mean_vary_together():
+    """Cells that rise and fall as one, two to one: the ratio does not vary at all. Where batch
+    values were not kept this is not known, and the largest possible error is given."""
+    found = sums(world(), chance=only(DIRECT, AWAY))
+    common = found.flux[0] / 18.0  # six dim cells of one share, six bright ones of two
+    found.cell_batch[:, :12] = common[:, None, :] * np.repeat([1.0, 2.0], 6)[:, None]
+    found.cell_half[0] = found.cell_batch[..., 0::2].sum(axis=-1)
+    found.cell_half[1] = found.cell_batch[..., 1::2].sum(axis=-1)
+    m = measures(make_run(world(), found))
+    assert m["desk.uniformity"].value == pytest.approx(12 / 18, rel=1e-12)
+    relative = m["desk.min"].error / m["desk.min"].value
+    assert relative > 1e-3
+    assert m["desk.uniformity"].error < 1e-12
+    assert m["desk.uniformity_split"].error < 1e-12
+    # blocks whose variance, all of it in one group, gives the dim cells the same error
+    mean, error = found.cell_half.sum(axis=0) / 64, m["desk.min"].error * CELL_AREA
+    found.cell_batch, found.cell_block_square = None, 64 * mean**2
+    found.cell_block_square[0] += 64 * 63 * error**2
+    apart = measures(make_run(world(), found))
+    assert apart["desk.min"].error == pytest.approx(m["desk.min"].error, rel=1e-9)
+    expected = 2 * relative * 12 / 18
+    assert apart["desk.uniformity"].error == pytest.approx(expected, rel=1e-9)

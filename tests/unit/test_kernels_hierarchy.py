@@ -13,7 +13,7 @@ MANY = settings(max_examples=200, deadline=None, derandomize=True)
 
 
 def visited(lower, upper):
-    """(tree, depth of the deepest leaf, order in which leaves hold the boxes); checks on the way."""
+    """(tree, depth of its deepest leaf), once everything that a tree must be has been checked."""
     tree = build_tree(lower, upper)
     node_lower, node_upper, child, count, order = tree
     assert sorted(order.tolist()) == list(range(len(lower)))
@@ -37,7 +37,7 @@ def visited(lower, upper):
     assert sorted(held) == list(range(len(lower)))  # each in exactly one leaf
     assert seen == len(child)
     assert deepest < STACK_DEPTH
-    return tree, deepest, held
+    return tree, deepest
 
 
 def boxes(n, rng, size=0.01):
@@ -48,7 +48,7 @@ def boxes(n, rng, size=0.01):
 @pytest.mark.parametrize("n", [1, 2, 3, 4, 5, 17, 1000, 20_000])
 def test_random_boxes(n):
     lower, upper = boxes(n, np.random.default_rng(n))
-    (node_lower, node_upper, *_), deepest, _ = visited(lower, upper)
+    (node_lower, node_upper, *_), deepest = visited(lower, upper)
     assert (node_lower[0] == lower.min(axis=0)).all()
     assert (node_upper[0] == upper.max(axis=0)).all()
     assert deepest <= 4 + 2 * np.log2(n)
@@ -56,7 +56,7 @@ def test_random_boxes(n):
 
 def test_no_boxes():
     """One empty node: its box holds nothing."""
-    (lower, upper, _, count, order), _, _ = visited(np.empty((0, 3)), np.empty((0, 3)))
+    (lower, upper, _, count, order), _ = visited(np.empty((0, 3)), np.empty((0, 3)))
     assert (lower > upper).all() and len(order) == 0
     assert count.tolist() == [0]
 
@@ -76,7 +76,7 @@ def test_boxes_that_shrink_toward_a_point_do_not_make_the_tree_too_deep():
     """Each halving has its own box, 1000 in a row: the depth is cut before the stack is full."""
     far = 0.5 ** np.arange(1000.0)
     lower = np.stack([far, np.zeros(1000), np.zeros(1000)], axis=1)
-    _, deepest, _ = visited(lower, lower * 1.0001)
+    _, deepest = visited(lower, lower * 1.0001)
     assert deepest == 90
 
 
@@ -89,7 +89,7 @@ def test_centres_that_rounding_puts_on_one_side():
 
 def test_leaves_are_small():
     lower, upper = boxes(5000, np.random.default_rng(1))
-    (_, _, _, count, _), _, _ = visited(lower, upper)
+    (_, _, _, count, _), _ = visited(lower, upper)
     assert count.max() <= 4
 
 

@@ -24,7 +24,9 @@ def test_purposes_are_different():
 def test_nothing_shares_numbers():
     """Another seed, source, ray, branch, event or purpose gives four other numbers."""
     drawn = {}
-    for words in product(range(3), (7, 2**63 + 1, 2**64 - 1), range(4), range(2), range(5), range(5)):
+    for words in product(
+        range(3), (7, 2**63 + 1, 2**64 - 1), range(4), range(2), range(5), range(5)
+    ):
         seed, source, ray, branch, event, purpose = words
         four = rng.uniforms(seed, np.uint64(source), ray, branch, event, purpose)
         for u in four:

@@ -84,8 +84,8 @@ def test_every_batch_estimates_the_whole_study():
 def test_volumes_that_absorb_are_marked():
     assert run().account["filled"].values.tolist() == [0, 1, 0]
     of = world()
-    media = Media(of.arrays.media.model, of.arrays.media.values + [0, 0.01, 0, 0])
-    foggy = replace(of, arrays=of.arrays._replace(media=media))
+    media = Media(of.tables.media.model, of.tables.media.values + [0, 0.01, 0, 0])
+    foggy = replace(of, tables=of.tables._replace(media=media))
     made = make_run(foggy, sums(foggy))
     assert made.account["filled"].to_series().to_dict() == {
         "wall": 0,

@@ -81,11 +81,11 @@ def test_any_netcdf_reader_finds_units(written):
 def test_a_run_without_detectors_paths_or_hits_is_kept(tmp_path):
     dark = run(chance=only(AWAY))
     of, found = world(), sums(world(), chance=only(AWAY))
-    arrays = of.arrays._replace(
-        detectors=type(of.arrays.detectors)(*(a[:0] for a in of.arrays.detectors))
+    arrays = of.tables._replace(
+        detectors=type(of.tables.detectors)(*(a[:0] for a in of.tables.detectors))
     )
     blind = make_run(
-        replace(of, detector_names=(), arrays=arrays),
+        replace(of, detector_names=(), tables=arrays),
         replace(
             found,
             what_if=found.what_if[:0],

@@ -2,6 +2,7 @@
 
 from lumentrace.jit import kernel
 from lumentrace.kernels import sampling
+from lumentrace.kernels.vectors import take
 
 name = "faces"
 
@@ -13,11 +14,12 @@ def start(mesh, sources, s, u):
     chosen = sampling.find(sources.face_area, first, last, u[0] * sources.face_area[last - 1])
     face = sources.face[chosen]
     weights = sampling.triangle(u[1], u[2])
-    a, b, c = mesh.corner[face]
+    a = take(mesh.vertex, mesh.corner[face, 0])
+    b = take(mesh.vertex, mesh.corner[face, 1])
+    c = take(mesh.vertex, mesh.corner[face, 2])
     origin = (
-        weights[0] * mesh.vertex[a, 0] + weights[1] * mesh.vertex[b, 0] + weights[2] * mesh.vertex[c, 0],
-        weights[0] * mesh.vertex[a, 1] + weights[1] * mesh.vertex[b, 1] + weights[2] * mesh.vertex[c, 1],
-        weights[0] * mesh.vertex[a, 2] + weights[1] * mesh.vertex[b, 2] + weights[2] * mesh.vertex[c, 2],
-    )  # fmt: skip
-    normal = mesh.normal[face]
-    return origin, (normal[0], normal[1], normal[2]), face
+        weights[0] * a[0] + weights[1] * b[0] + weights[2] * c[0],
+        weights[0] * a[1] + weights[1] * b[1] + weights[2] * c[1],
+        weights[0] * a[2] + weights[1] * b[2] + weights[2] * c[2],
+    )
+    return origin, take(mesh.normal, face), face
