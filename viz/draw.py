@@ -20,10 +20,10 @@ def draw_run(
 ) -> list[Path]:
     """Draw a run into a folder; return the files, all written whole.
 
-    STEM-scene.png shows everything, STEM-paths-DETECTOR.png a cut with the strongest paths,
-    STEM-map-DETECTOR.png the map; STEM is the run's. detector: only this one. paths: how many of
-    the strongest. Raises UserError: an unknown detector, too many paths, what a picture needs is
-    not installed.
+    STEM-scene.png shows everything, STEM-paths-DETECTOR.png a cut with the strongest paths where
+    light arrived, STEM-map-DETECTOR.png the map; STEM is the run's. detector: only this one. paths:
+    how many of the strongest. Raises UserError: an unknown detector, too many paths, what pictures
+    need is not installed, the folder cannot be written.
     """
     number = PATHS if paths is None else paths
     if not 1 <= number <= MOST:
@@ -43,6 +43,7 @@ def draw_run(
     stage = stage_of(run, world)
     pages = {f"{stem}-scene": scene_picture(stage, shown)}
     for name in names:
-        pages[f"{stem}-paths-{name}"] = section_picture(stage, name, drawn[name])
+        if any(path.ways for path in drawn[name]):
+            pages[f"{stem}-paths-{name}"] = section_picture(stage, name, drawn[name])
         pages[f"{stem}-map-{name}"] = map_picture(run, name)
     return [page.save(folder / f"{file}.png") for file, page in pages.items()]

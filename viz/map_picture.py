@@ -28,20 +28,17 @@ def map_picture(run: Run, name: str) -> Page:
     """A map with scale, axes in the study's unit, and the detector's measures with their errors."""
     node = run.detector(name)
     value, hit = node["value"].values, node["effective"].values > 0.0
-    kind, unit = node.attrs["counts"], node.attrs["map_unit"]
+    kind, unit, size = node.attrs["counts"], node.attrs["map_unit"], node.attrs["size"]
     n_up, n_across = value.shape
     subtitle = (
         f"{name}: {kind} in {n_across} x {n_up} cells of "
-        f"{node.attrs['size'][0] / n_across:.4g} x {node.attrs['size'][1] / n_up:.4g} {run.length}; "
+        f"{size[0] / n_across:.4g} x {size[1] / n_up:.4g} {run.length}; "
         f"{grouped(run.rays)} rays, seed {run.seed}"
     )
     page = Page(_HEIGHT, run.title, subtitle)
     axes = _frame(page, node, run.length)
     scale = scale_of([value])
-    edges = [
-        np.linspace(-s / 2, s / 2, n + 1)
-        for s, n in zip(node.attrs["size"], (n_across, n_up), strict=True)
-    ]
+    edges = [np.linspace(-s / 2, s / 2, n + 1) for s, n in zip(size, (n_across, n_up), strict=True)]
     axes.pcolormesh(*edges, np.ma.array(value, mask=~hit), cmap=MAP_COLOURS, norm=scale.norm)
     _mark_not_hit(axes, edges, hit)
     _write_values(axes, page, node, scale)

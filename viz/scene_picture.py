@@ -78,10 +78,13 @@ def scene_picture(stage: Stage, drawn: list[Drawn]) -> Page:
 
 
 def section_picture(stage: Stage, detector: str, drawn: list[Drawn]) -> Page:
-    """Square on to a cut through the source of the strongest path, as large as the paths allow."""
+    """Square on to a cut through the source of the strongest path, as large as the paths allow.
+
+    At least one of the paths has ways.
+    """
     page, place = _page(stage.run, drawn, f"Strongest paths to {detector}")
     world = stage.world
-    ways = [way for path in drawn for way in path.ways] or [*stage.lamps, *stage.planes]
+    ways = [way for path in drawn for way in path.ways]
     boxes = [part_box(world, p) for p in _touched(world, drawn)]
     view, plane = section(ways, boxes, _heart(world, drawn), place[2] / place[3])
     shown = [opened(s, _nudged(plane, stage)) for s in stage.solids]

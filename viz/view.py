@@ -7,7 +7,7 @@ import numpy as np
 _ELEVATION, _AZIMUTH = np.radians(24.0), np.radians(28.0)
 _FAR = 3.0  # a first or last leg so many times longer than the rest of a way leaves the picture
 _ROOM = 2.2  # a part that would make the picture so many times larger is not shown whole
-_WORTH = (1.0, 1.0, 0.6)  # of a cut at x, y, z: a side view says more than a plan
+_WORTH = (1.0, 1.0, 0.5)  # of a cut at x, y, z: a side view says more than a plan
 _MARGIN = 0.1  # of the height, on each side
 _UP = np.array([0.0, 0.0, 1.0])
 
@@ -82,9 +82,10 @@ def _near(ways: list[np.ndarray], view: View) -> list[np.ndarray]:
 
 
 def _length(view: View, ways: list[np.ndarray]) -> float:
-    """How long the ways are drawn in a picture of height 1."""
+    """How long a way is drawn, on average, in a picture of height 1."""
     flat = _near(ways, view)
-    return sum(np.linalg.norm(np.diff(way, axis=0), axis=1).sum() for way in flat) / view.size[1]
+    lengths = [np.linalg.norm(np.diff(way, axis=0), axis=1).sum() for way in flat]
+    return np.mean(lengths) / view.size[1]
 
 
 def _facing(axis: int, ways: list[np.ndarray], aspect: float) -> View:

@@ -37,6 +37,14 @@ def test_check_for_machines_holds_the_same_facts(tmp_path):
     assert sorted(p.name for p in tmp_path.iterdir()) == ["plate.obj", "plate.toml"]
 
 
+def test_check_compiles_nothing(tmp_path):
+    scene = small_scene(tmp_path)
+    cache = tmp_path / "cache"
+    done = lumentrace("check", scene.name, cwd=tmp_path, env={"LUMENTRACE_CACHE": str(cache)})
+    assert done.returncode == 0
+    assert not list(cache.rglob("*.nbi"))
+
+
 def test_parts_that_touch_are_listed_with_what_was_taken(tmp_path):
     scene = small_scene(tmp_path)
     scene.write_text(SCENE.replace("at     = [0, 0, 10]", "at     = [0, 0, 0]"), encoding="utf-8")

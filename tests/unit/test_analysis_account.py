@@ -83,7 +83,7 @@ def test_lumens_weigh_each_group_by_its_own_wavelength():
 def altered(**changes):
     of = world()
     sources = of.tables.sources._replace(**changes)
-    of = type(of)(**{**vars(of), "arrays": of.tables._replace(sources=sources)})
+    of = type(of)(**{**vars(of), "tables": of.tables._replace(sources=sources)})
     return account(make_run(of, sums(of)))
 
 
@@ -99,7 +99,7 @@ def test_a_group_of_two_wavelengths_has_no_lumens():
     of = type(of)(
         **{
             **vars(of),
-            "arrays": of.tables._replace(sources=sources),
+            "tables": of.tables._replace(sources=sources),
             "group_names": ("both", "none"),
         }
     )

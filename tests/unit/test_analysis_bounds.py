@@ -33,7 +33,7 @@ def one_source():
     """The toy world with sources of one weight, so that Poisson bounds are exact."""
     of = world(photometric=(False, False))
     sources = of.tables.sources._replace(ray_flux=np.full(2, 1.0 / BLOCK_RAYS))
-    return type(of)(**{**vars(of), "arrays": of.tables._replace(sources=sources)})
+    return type(of)(**{**vars(of), "tables": of.tables._replace(sources=sources)})
 
 
 def test_a_scene_may_name_what_has_bounds():

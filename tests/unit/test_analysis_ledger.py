@@ -124,7 +124,7 @@ def test_light_that_a_detector_does_not_see_is_no_flux_for_certain():
     """Arrivals of invisible light at an illuminance plane."""
     of = world()
     sources = of.tables.sources._replace(wavelength=np.array([940.0, 940.0]))
-    of = type(of)(**{**vars(of), "arrays": of.tables._replace(sources=sources)})
+    of = type(of)(**{**vars(of), "tables": of.tables._replace(sources=sources)})
     row = paths(make_run(of, sums(of, chance=only(DIRECT))), "desk")[0]
     assert (row.flux, row.error, row.upper) == (0.0, None, 0.0)
     assert (row.share, row.share_error, row.length) == (None, None, None)

@@ -165,7 +165,7 @@ def test_the_uniformity_of_a_field_with_a_dark_cell_has_a_bound():
     """A catching desk of which the dark cell was never hit."""
     of = world()
     catching = of.tables.detectors._replace(catches=np.array([True, True]))
-    of = type(of)(**{**vars(of), "arrays": of.tables._replace(detectors=catching)})
+    of = type(of)(**{**vars(of), "tables": of.tables._replace(detectors=catching)})
     found = sums(of, chance=only(DIRECT))
     found.cell_batch[:, 0], found.cell_half[:, :, 0], found.cell_square[:, 0] = 0, 0, 0
     m = measures(make_run(of, found))
@@ -224,7 +224,7 @@ def test_invisible_light_is_no_lumens_for_certain():
     sources = of.tables.sources._replace(wavelength=np.array([940.0, 940.0]))
     catching = of.tables.detectors._replace(catches=np.array([True, True]))
     arrays = of.tables._replace(sources=sources, detectors=catching)
-    of = type(of)(**{**vars(of), "arrays": arrays})
+    of = type(of)(**{**vars(of), "tables": arrays})
     m = measures(make_run(of, sums(of, chance=only(DIRECT))))["desk.flux"]
     assert (m.value, m.error, m.upper) == (0.0, None, 0.0)
 
