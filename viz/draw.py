@@ -38,7 +38,7 @@ def draw_run(
 
     stem = Path(run_name(run)).stem
     drawn = {name: strongest(run, world, name, number) for name in names}
-    each = max(1, number // len(names))
+    each = max(1, number // max(1, len(names)))
     shown = [path for found in drawn.values() for path in found[:each]][:MOST]
     stage = stage_of(run, world)
     pages = {f"{stem}-scene": scene_picture(stage, shown)}

@@ -4,7 +4,7 @@ import numpy as np
 from matplotlib.patheffects import withStroke
 
 from lumentrace.world.world import World
-from lumentrace_viz.page import FAINT, INK, spread
+from lumentrace_viz.page import FAINT, INK
 from lumentrace_viz.places import detector_corners, source_faces, source_outline
 from lumentrace_viz.solids import GLOW
 from lumentrace_viz.view import View
@@ -16,7 +16,9 @@ COLOURS = (
 )  # fmt: skip
 _HALO = [withStroke(linewidth=3.5, foreground="white")]
 _THIN, _THICK = 0.9, 2.6  # lines of a weak path and of the strongest
-_LABEL_GAP = 0.036  # of the height
+_NAME_GAP, _NAMES = 0.036, 48  # of the height; so many fit in two columns
+_NAME = {"size": 11, "color": INK, "path_effects": _HALO, "parse_math": False, "va": "center"}
+_LEADER = {"arrowstyle": "-", "color": FAINT, "lw": 0.9, "shrinkA": 4, "shrinkB": 0}
 
 
 def add_ways(axes, view: View, drawn: list[Drawn]) -> None:
@@ -44,37 +46,36 @@ def add_outlines(axes, view: View, world: World) -> None:
 
 
 def add_names(axes, view: View, anchors: dict[str, np.ndarray]) -> None:
-    """Names at the left and right border, joined by lines to their (3,) anchors."""
-    names = list(anchors)
-    flat = view.project(np.array([anchors[name] for name in names]))
-    inside = (flat >= view.low).all(axis=1) & (flat <= view.high).all(axis=1)
-    names, flat = [n for n, i in zip(names, inside, strict=True) if i], flat[inside]
-    right = flat[:, 0] > (view.low[0] + view.high[0]) / 2.0
-    for side in (False, True):
-        own = np.flatnonzero(right == side)
-        x = view.high[0] - 0.01 * view.size[0] if side else view.low[0] + 0.01 * view.size[0]
-        heights = spread(flat[own, 1], _LABEL_GAP * view.size[1])
-        for i, y in zip(own, heights, strict=True):
-            axes.annotate(
-                names[i],
-                xy=flat[i],
-                xytext=(x, y),
-                ha="right" if side else "left",
-                va="center",
-                size=11,
-                color=INK,
-                path_effects=_HALO,
-                parse_math=False,
-                zorder=8,
-                arrowprops={
-                    "arrowstyle": "-",
-                    "color": FAINT,
-                    "lw": 0.9,
-                    "shrinkA": 4,
-                    "shrinkB": 0,
-                },
-            )
-            axes.plot(*flat[i], "o", color=INK, ms=4, zorder=7)
+    """Names at the left and right border, joined by lines to their (3,) anchors in the frame."""
+    flat = {name: view.project(point) for name, point in anchors.items()}
+    shown = [n for n, p in flat.items() if (p >= view.low).all() and (p <= view.high).all()]
+    middle, edge = (view.low + view.high) / 2.0, 0.01 * view.size[0]
+    for right in (False, True):
+        own = [name for name in shown[:_NAMES] if (flat[name][0] > middle[0]) == right]
+        x, ha = (view.high[0] - edge, "right") if right else (view.low[0] + edge, "left")
+        gap = _NAME_GAP * view.size[1]
+        places = np.array([flat[name][1] for name in own])
+        heights = spread(places, gap, view.low[1] + gap / 2, view.high[1] - gap / 2)
+        for name, y in zip(own, heights, strict=True):
+            line = {"arrowprops": _LEADER, "zorder": 8}
+            axes.annotate(name, xy=flat[name], xytext=(x, y), ha=ha, **_NAME, **line)
+            axes.plot(*flat[name], "o", color=INK, ms=4, zorder=7)
+
+
+def spread(places: np.ndarray, gap: float, low: float, high: float) -> np.ndarray:
+    """Places (n,) moved apart, within bounds that have room, until neighbours differ by `gap`."""
+    order = np.argsort(places, kind="stable")
+    moved = np.clip(places[order], low, high)
+    for _ in range(1000):
+        short = np.maximum(gap - np.diff(moved), 0.0) / 2.0
+        if (short < 1e-3 * gap).all():
+            break
+        moved[:-1] -= short
+        moved[1:] += short
+        moved = np.clip(moved, low, high)
+    back = np.empty_like(moved)
+    back[order] = moved
+    return back
 
 
 def add_scale(axes, view: View, length: str) -> None:

@@ -70,16 +70,3 @@ def fitting(text: str, most: int) -> str:
         return text
     half = (most - 3) // 2
     return f"{text[:half]} … {text[-half:]}"
-
-
-def spread(places: np.ndarray, gap: float) -> np.ndarray:
-    """Ascending places moved apart until neighbours differ by `gap`, about where they were."""
-    order = np.argsort(places, kind="stable")
-    moved = places[order].astype(float)
-    for _ in range(100):
-        short = np.maximum(gap - np.diff(moved), 0.0) / 2.0
-        moved[:-1] -= short
-        moved[1:] += short
-    back = np.empty_like(moved)
-    back[order] = moved
-    return back

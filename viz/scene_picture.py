@@ -44,17 +44,16 @@ class Stage:
     solids: list[Solid]  # a part each, whole
 
     @property
-    def lamps(self) -> list[np.ndarray]:
-        return [source_outline(self.world, s) for s in range(len(self.world.source_names))]
-
-    @property
-    def planes(self) -> list[np.ndarray]:
-        return [detector_corners(self.world, d) for d in range(len(self.world.detector_names))]
-
-    @property
     def points(self) -> np.ndarray:
         """(n, 3) of everything."""
-        return np.concatenate([self.world.arrays.mesh.vertex, *self.lamps, *self.planes])
+        world = self.world
+        lamps = [source_outline(world, s) for s in range(len(world.source_names))]
+        planes = [detector_corners(world, d) for d in range(len(world.detector_names))]
+        return np.concatenate([world.arrays.mesh.vertex, *lamps, *planes])
+
+    @property
+    def extent(self) -> float:
+        return float(np.linalg.norm(np.ptp(self.points, axis=0)))
 
 
 def stage_of(run: Run, world: World) -> Stage:
@@ -96,7 +95,7 @@ def section_picture(stage: Stage, detector: str, drawn: list[Drawn]) -> Page:
     axes.set_ylabel(f"{up}, {stage.run.length}", size=11, color=INK)
     at = plane.point @ np.abs(view.toward) + 0.0
     note = f"Cut at {toward} = {at:.4g} {stage.run.length}; rays are projected onto the cut."
-    corner = view.project(stage.planes[world.detector_names.index(detector)])
+    corner = view.project(detector_corners(world, world.detector_names.index(detector)))
     if (corner.max(axis=0) < view.low).any() or (corner.min(axis=0) > view.high).any():
         note += f" They go on to {detector}, which lies outside the frame."
     page.text(place[0] + place[2], place[1] + place[3] + 9, note, size=10, color=FAINT, ha="right")
@@ -116,8 +115,7 @@ def _heart(world: World, drawn: list[Drawn]) -> np.ndarray:
 
 
 def _nudged(plane: Plane, stage: Stage) -> Plane:
-    size = np.linalg.norm(np.ptp(stage.world.arrays.mesh.vertex, axis=0))
-    return Plane(plane.point + _NUDGE * size * plane.normal, plane.normal)
+    return Plane(plane.point + _NUDGE * stage.extent * plane.normal, plane.normal)
 
 
 def _touched(world: World, drawn: list[Drawn]) -> list[int]:
@@ -156,20 +154,21 @@ def _anchors(stage: Stage, shown: list[Solid], view: View, tags=()) -> dict[str,
         part = world.part_names.index(name.partition(":")[0])
         found[name] = anchor_of_tag(shown[part], world.tag_names.index(name), view)
     named = {name.partition(":")[0] for name, point in found.items() if point is not None}
+    for s, name in enumerate(world.source_names):
+        found[name] = source_middle(world, s)
+    for d, name in enumerate(world.detector_names):
+        corner = detector_corners(world, d)
+        found[name] = corner[view.project(corner)[:, 0].argmax()]
     for name, part in zip(world.part_names, shown, strict=True):
         if name not in named:
             found[name] = anchor_of_part(part, view)
-    for s, name in enumerate(world.source_names):
-        found[name] = source_middle(world, s)
-    for name, corner in zip(world.detector_names, stage.planes, strict=True):
-        found[name] = corner[view.project(corner)[:, 0].argmax()]
     return {name: point for name, point in found.items() if point is not None}
 
 
 def _sheets(page: Page, place, stage: Stage, view: View) -> list[Sheet]:
     """The maps that one sees, smaller ones in front, and their scales, one a unit."""
     table, names = stage.world.arrays.detectors, stage.world.detector_names
-    lift = _LIFT * np.linalg.norm(np.ptp(stage.points, axis=0)) * view.toward
+    lift = _LIFT * stage.extent * view.toward
     facing = [d for d in range(len(names)) if abs(table.place[d, 1] @ view.toward) > _FACING]
     facing.sort(key=lambda d: -np.prod(table.size[d]))
     nodes = {d: stage.run.detector(names[d]) for d in facing}

@@ -5,7 +5,7 @@ from typing import NamedTuple
 import numpy as np
 import pyvista
 
-from lumentrace.world.arrays import SHEET, TRANSPARENT
+from lumentrace.world.arrays import TRANSPARENT
 from lumentrace_viz.solids import GLOW, Solid
 from lumentrace_viz.view import View
 
@@ -39,9 +39,8 @@ def _add_solid(plotter, shown: Solid) -> None:
     clear = shown.kind == TRANSPARENT
     look = {"color": _CLEAR, "opacity": 0.22} if clear else {"scalars": "colour", "rgb": True}
     _add(plotter, shown.mesh, **look, ambient=0.4, diffuse=0.65, specular=0.05)
-    if shown.kind != SHEET:
-        look = {"color": _CLEAR_CUT, "opacity": 0.45} if clear else {"color": _CUT}
-        _add(plotter, shown.cut, **look, lighting=False)
+    look = {"color": _CLEAR_CUT, "opacity": 0.45} if clear else {"color": _CUT}
+    _add(plotter, shown.cut, **look, lighting=False)
     _add(plotter, shown.edges, color=_EDGE, line_width=1.2, lighting=False)
     _add(plotter, shown.outline, color=_OUTLINE, line_width=2.5, lighting=False)
     if shown.outline.n_cells:

@@ -6,6 +6,7 @@ import numpy as np
 import pyvista
 
 from lumentrace.scene.model import DEFAULT
+from lumentrace.world.arrays import SHEET
 from lumentrace.world.world import World
 from lumentrace_viz.view import Plane, View
 
@@ -18,10 +19,11 @@ class Solid(NamedTuple):
     """All copies of a part, or what a plane leaves of them."""
 
     kind: int  # OPAQUE, SHEET or TRANSPARENT
+    filled: bool  # closed, and no sheet: it has an inside
     mesh: pyvista.PolyData  # cells carry `colour`, `tag` and `glows`
     edges: pyvista.PolyData
-    cut: pyvista.PolyData  # the cut surface, inside closed outlines only
-    outline: pyvista.PolyData  # of the cut; its lines carry what the cells do
+    cut: pyvista.PolyData  # the inside laid open
+    outline: pyvista.PolyData  # where the plane meets the mesh; its lines carry what the cells do
 
 
 def solid(world: World, part: int) -> Solid:
@@ -37,7 +39,8 @@ def solid(world: World, part: int) -> Solid:
     seen.cell_data["colour"] = np.where(glows[:, None], glow, _greys(world)[mesh.tag[faces], None])
     edges = seen.extract_feature_edges(_CREASE, non_manifold_edges=False, manifold_edges=False)
     kind = int(bodies.kind[np.flatnonzero(bodies.part == part)[0]])
-    return Solid(kind, seen, edges, pyvista.PolyData(), pyvista.PolyData())
+    filled = kind != SHEET and world.parts[part].closed
+    return Solid(kind, filled, seen, edges, pyvista.PolyData(), pyvista.PolyData())
 
 
 def _greys(world: World) -> np.ndarray:
@@ -56,9 +59,11 @@ def opened(whole: Solid, plane: Plane) -> Solid:
     """What a plane leaves of a part."""
     at = {"normal": plane.normal, "origin": plane.point}
     outline = whole.mesh.slice(**at)
-    cut = outline.triangulate_contours() if outline.n_cells else outline
+    cut = outline.triangulate_contours() if outline.n_cells and whole.filled else whole.cut
     edges = whole.edges.clip(**at) if whole.edges.n_cells else whole.edges
-    return Solid(whole.kind, whole.mesh.clip(**at), edges, cut, outline)
+    return whole._replace(
+        mesh=whole.mesh.clip(**at).triangulate(), edges=edges, cut=cut, outline=outline
+    )
 
 
 def anchor_of_part(shown: Solid, view: View) -> np.ndarray | None:

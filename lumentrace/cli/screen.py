@@ -3,8 +3,6 @@
 import sys
 from contextlib import contextmanager
 
-from lumentrace.errors import Notice
-
 
 def show(text: str) -> None:
     """Print a result."""
@@ -21,11 +19,6 @@ def show_json(answer: dict) -> None:
 def remark(text: str) -> None:
     """Say something beside the results."""
     print(text, file=sys.stderr, flush=True)
-
-
-def remark_notices(notices: tuple[Notice, ...]) -> None:
-    for notice in notices:
-        remark(f"{notice.kind}: {notice.text}")
 
 
 class Silent:
@@ -50,7 +43,9 @@ class Bar:
 
     def rays(self, done: int, planned: int) -> None:
         shown = f"{done / 1e6:.1f} of {planned / 1e6:.1f} M rays"
-        self._progress.update(self._task, completed=done, total=planned, rays=shown)
+        self._progress.update(
+            self._task, description="Tracing", completed=done, total=planned, rays=shown
+        )
 
 
 @contextmanager

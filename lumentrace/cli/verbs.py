@@ -10,7 +10,7 @@ from lumentrace.cli.screen import progress, remark, show, show_json
 from lumentrace.cli.words import (
     detector_option,
     json_option,
-    scene,
+    subject_argument,
     top_option,
     tracing_options,
 )
@@ -50,7 +50,7 @@ def lumentrace(context):
     short_help="Say what a scene holds, and what is wrong or doubtful.",
     epilog="Example: lumentrace check scenes/bench_lamp/bench_lamp.toml",
 )
-@scene()
+@subject_argument()
 @json_option()
 def check(subject, as_json):
     """Say what a scene holds and what is wrong or doubtful in it; trace nothing."""
@@ -70,7 +70,7 @@ def check(subject, as_json):
     short_help="Trace a scene, print measures and account, write the run.",
     epilog="Example: lumentrace trace scenes/bench_lamp/bench_lamp.toml --rays 2e6",
 )
-@scene()
+@subject_argument()
 @tracing_options
 @json_option()
 def trace(subject, rays, seed, threads, out, as_json):
@@ -84,11 +84,8 @@ def trace(subject, rays, seed, threads, out, as_json):
 
         scene = study.load(subject, seed=seed)
         folder = study.run_folder(scene, out)
-        if not study.is_compiled():
-            bar.stage("Compiling")
-            remark("Compiling the tracer for this machine, once: about 20 s.")
         world = study.build(scene)
-        bar.stage("Tracing")
+        _tell_compiling(bar)
         started = perf_counter()
         run = study.trace(world, rays=rays, threads=threads, progress=bar.rays)
         seconds = perf_counter() - started
@@ -97,6 +94,15 @@ def trace(subject, rays, seed, threads, out, as_json):
         show_json(trace_json(run, path, world))
     else:
         show(trace_text(run, path, world, asked=rays, seconds=seconds))
+
+
+def _tell_compiling(bar):
+    """Say why the first use takes a while."""
+    from lumentrace import study
+
+    if not study.is_compiled():
+        bar.stage("Compiling")  # until the first rays are done
+        remark("Compiling the tracer for this machine, once: about 20 s.")
 
 
 def _find(subject):
@@ -116,7 +122,7 @@ def _find(subject):
     short_help="Print the paths to each detector, strongest first.",
     epilog="Example: lumentrace ledger scenes/range_finder/range_finder.toml --top 5",
 )
-@scene("SCENE|RUN")
+@subject_argument("SCENE|RUN")
 @detector_option()
 @top_option("Paths to print for each detector; 10 where left out, with --json all.")
 @json_option()
@@ -137,7 +143,7 @@ def ledger(subject, detector, top, as_json):
     short_help="Draw a run: parts, strongest paths, detector maps.",
     epilog="Example: lumentrace draw scenes/range_finder/range_finder.toml --detector rx",
 )
-@scene("SCENE|RUN")
+@subject_argument("SCENE|RUN")
 @detector_option()
 @top_option("Paths to draw, strongest first; 6 where left out.")
 @json_option()
@@ -154,6 +160,7 @@ def draw(subject, detector, top, as_json):
         bar.stage("Reading the run and its scene")
         found = study.find_run(subject)
         world = study.world_of(found)
+        _tell_compiling(bar)
         bar.stage("Drawing")
         from lumentrace_viz.draw import draw_run
 

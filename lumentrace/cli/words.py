@@ -29,7 +29,7 @@ class WholeNumber(click.ParamType):
         return whole
 
 
-def scene(help_name: str = "SCENE"):
+def subject_argument(help_name: str = "SCENE"):
     """The one argument of most verbs: a scene file, or also a run's file where the name says so."""
     return click.argument(
         "subject", metavar=help_name, type=click.Path(path_type=Path), required=True
