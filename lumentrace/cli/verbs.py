@@ -85,7 +85,7 @@ def trace(subject, rays, seed, threads, out, as_json):
         scene = study.load(subject, seed=seed)
         folder = study.run_folder(scene, out)
         world = study.build(scene)
-        _tell_compiling(bar)
+        compiling = _tell_compiling(bar)
         started = perf_counter()
         run = study.trace(world, rays=rays, threads=threads, progress=bar.rays)
         seconds = perf_counter() - started
@@ -93,16 +93,18 @@ def trace(subject, rays, seed, threads, out, as_json):
     if as_json:
         show_json(trace_json(run, path, world))
     else:
-        show(trace_text(run, path, world, asked=rays, seconds=seconds))
+        show(trace_text(run, path, world, asked=rays, seconds=seconds, compiling=compiling))
 
 
-def _tell_compiling(bar):
-    """Say why the first use takes a while."""
+def _tell_compiling(bar) -> bool:
+    """Say why the first use takes a while; return whether it does."""
     from lumentrace import study
 
-    if not study.is_compiled():
-        bar.stage("Compiling")  # until the first rays are done
-        remark("Compiling the tracer for this machine, once: about 20 s.")
+    if study.is_compiled():
+        return False
+    bar.stage("Compiling")  # until the first rays are done
+    remark("Compiling the tracer for this machine, once: about 20 s.")
+    return True
 
 
 def _find(subject):

@@ -37,14 +37,20 @@ def trace_json(run: Run, path: Path, world: World) -> dict:
     }
 
 
-def trace_text(run: Run, path: Path, world: World, asked: int | None, seconds: float) -> str:
-    """The same for people, at most 80 columns wide."""
+def trace_text(
+    run: Run, path: Path, world: World, asked: int | None, seconds: float, compiling: bool
+) -> str:
+    """The same for people, at most 80 columns wide.
+
+    asked: rays asked for in place of the scene's. seconds: of tracing, `compiling` included or not.
+    """
     found = measures(run)
     detectors = {name: run.detector(name) for name in run.detectors}
     single = {n for n, node in detectors.items() if node["value"].size == 1}
     in_lumens = any(node.attrs["counts"] == "illuminance" for node in detectors.values())
+    lasted = _duration(seconds) + (", compiling included" if compiling else "")
     blocks = (
-        [*head(run.data.attrs["scene"], run.title), *_traced(run, world, found, asked, seconds)],
+        [*head(run.data.attrs["scene"], run.title), *_traced(run, world, found, asked, lasted)],
         measure_lines(found, run.limits, single),
         account_lines(account(run), in_lumens),
         lost_lines(run),
@@ -59,9 +65,9 @@ def trace_text(run: Run, path: Path, world: World, asked: int | None, seconds: f
     return "\n\n".join("\n".join(block) for block in blocks if block) + "\n"
 
 
-def _traced(run: Run, world: World, found: dict[str, Measure], asked, seconds) -> list[str]:
+def _traced(run: Run, world: World, found: dict[str, Measure], asked, lasted) -> list[str]:
     """How many rays, how long, and what ended it."""
-    sentences = [f"{grouped(run.rays)} rays in {_duration(seconds)}, seed {run.seed}."]
+    sentences = [f"{grouped(run.rays)} rays in {lasted}, seed {run.seed}."]
     until = world.scene.trace.until
     wanted = asked or world.scene.trace.rays
     if until is not None:
