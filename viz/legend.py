@@ -8,7 +8,7 @@ from lumentrace_viz.marks import COLOURS
 from lumentrace_viz.page import FAINT, LINE, SIDE, WIDTH, Page
 from lumentrace_viz.ways import Drawn
 
-_LETTERS = 165  # in a line
+_LETTERS = 170  # in a line
 _SHARE, _PATH = SIDE + 60, SIDE + 240
 _FOOT = 24
 
@@ -22,7 +22,7 @@ def write_legend(page: Page, drawn: list[Drawn]) -> None:
     y = legend_height(drawn) - LINE
     page.text(WIDTH - SIDE, y, CAUTION, color=FAINT, size=10, ha="right")
     if not drawn:
-        page.text(SIDE, y, "No light arrived.")
+        page.text(SIDE, y, "No path to a detector.")
         return
     page.text(_SHARE, y, "share at detector", color=FAINT, size=10)
     page.text(_PATH, y, "path", color=FAINT, size=10)

@@ -62,9 +62,9 @@ def stage_of(run: Run, world: World) -> Stage:
 
 def scene_picture(stage: Stage, drawn: list[Drawn]) -> Page:
     """Everything, seen obliquely from above; opaque parts are cut open."""
-    page, place = _page(stage.run, drawn, "Overview; opaque parts cut open")
     world, glowing = stage.world, glowing_parts(stage.world)
     cut = [p for p, s in enumerate(stage.solids) if s.kind == OPAQUE and p not in glowing]
+    page, place = _page(stage.run, drawn, "Overview; opaque parts cut open" if cut else "Overview")
     around = np.concatenate([part_box(world, p) for p in cut]) if cut else stage.points
     view, plane = overview(stage.points, around, _heart(world, drawn), place[2] / place[3])
     plane = _nudged(plane, stage)
@@ -84,7 +84,8 @@ def section_picture(stage: Stage, detector: str, drawn: list[Drawn]) -> Page:
     page, place = _page(stage.run, drawn, f"Strongest paths to {detector}")
     world = stage.world
     ways = [way for path in drawn for way in path.ways]
-    boxes = [part_box(world, p) for p in _touched(world, drawn)]
+    target = detector_corners(world, world.detector_names.index(detector))
+    boxes = [*(part_box(world, p) for p in _touched(world, drawn)), target]
     view, plane = section(ways, boxes, _heart(world, drawn), place[2] / place[3])
     shown = [opened(s, _nudged(plane, stage)) for s in stage.solids]
     axes = _draw(page, place, stage, shown, view, drawn)
@@ -95,7 +96,7 @@ def section_picture(stage: Stage, detector: str, drawn: list[Drawn]) -> Page:
     axes.set_ylabel(f"{up}, {stage.run.length}", size=11, color=INK)
     at = plane.point @ np.abs(view.toward) + 0.0
     note = f"Cut at {toward} = {at:.4g} {stage.run.length}; rays are projected onto the cut."
-    corner = view.project(detector_corners(world, world.detector_names.index(detector)))
+    corner = view.project(target)
     if (corner.max(axis=0) < view.low).any() or (corner.min(axis=0) > view.high).any():
         note += f" They go on to {detector}, which lies outside the frame."
     page.text(place[0] + place[2], place[1] + place[3] + 9, note, size=10, color=FAINT, ha="right")

@@ -57,7 +57,7 @@ def overview(points: np.ndarray, parts: np.ndarray, through: np.ndarray, aspect:
 
 def section(ways: list[np.ndarray], boxes: list[np.ndarray], through: np.ndarray, aspect: float):
     """(View, Plane): square on to the plane x, y or z through a point in which the ways are drawn
-    largest; the picture shows them, and whole those of the boxes (2, 3) that are not too large."""
+    largest; the picture shows them, and whole those of the boxes (n, 3) that are not too large."""
     views = [_facing(axis, ways, aspect) for axis in range(3)]
     axis = max(range(3), key=lambda axis: _length(views[axis], ways) * _WORTH[axis])
     view, shown = views[axis], _near(ways, views[axis])
