@@ -53,9 +53,9 @@ def cache_folder() -> Path | None:
 
 
 def is_warm() -> bool:
-    """Whether compiled kernels of exactly these sources are on disk."""
+    """Whether the tracer of exactly these sources is on disk, compiled."""
     folder = cache_folder()
-    return folder is not None and any(folder.rglob("*.nbi"))
+    return folder is not None and any(folder.rglob("block.trace_rays-*.nbi"))
 
 
 if cache_folder() is not None:

@@ -1,6 +1,6 @@
 """Some consecutive rays of the run: a block, or one that is traced again."""
 
-from lumentrace.engine.emit import start
+from lumentrace.engine.emit import find_inside, start
 from lumentrace.engine.history import follow, lose
 from lumentrace.engine.state import settle
 from lumentrace.engine.sums import TOO_DEEP
@@ -24,8 +24,9 @@ def trace_rays(world, rows, first, last, rays, hits, tally):
     clear(tally)
     ray = rays[0]
     for ray_number in range(first, last):
-        if start(world, ray, ray_number, hits, tally):
-            follow(world, rows, ray, ray_number, hits, tally)
-        else:
+        start(world, ray, ray_number, tally)
+        if world.sources.immersed[ray.source] and not find_inside(world, ray, hits):
             lose(tally, rows, ray, ray_number, TOO_DEEP, -1)
+        else:
+            follow(world, rows, ray, ray_number, hits, tally)
         settle(tally, world.sources.group[ray.source])

@@ -19,11 +19,8 @@ def source_of(sources, place):
 
 
 @kernel
-def start(world, ray, ray_number, hits, tally):
-    """Set the ray to the start of ray `ray_number` of the run.
-
-    Returns False where the ray starts inside more bodies than the engine holds.
-    """
+def start(world, ray, ray_number, tally):
+    """Set the ray to the start of ray `ray_number` of the run, outside all bodies for now."""
     sources = world.sources
     block, place = ray_number // BLOCK_RAYS, ray_number % BLOCK_RAYS
     s = source_of(sources, place)
@@ -41,7 +38,6 @@ def start(world, ray, ray_number, hits, tally):
     ray.number = number
     ray.wavelength = sources.wavelength[s]
     ray.weight = sources.ray_flux[s]
-    return not sources.immersed[s] or find_inside(world, ray, hits)
 
 
 @kernel

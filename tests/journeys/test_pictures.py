@@ -14,6 +14,12 @@ PICTURES = {
     "bench_lamp": {"scene", "paths-task", "map-task", "paths-desk", "map-desk"},
     "range_finder": {"scene", "paths-rx", "map-rx"},
 }
+SPARE = """
+[[detector]]
+name   = "spare"
+plane  = { center = [0, 0, 2], normal = [0, 0, 1], across = [1, 0, 0], size = [2,2], cells = [1,1] }
+counts = "irradiance"
+"""
 
 
 def pixels_of(file: Path) -> tuple[int, int]:
@@ -59,17 +65,18 @@ def test_pictures_have_their_size_and_are_not_blank(drawn):
 
 def test_only_the_detector_asked_for_is_drawn(tmp_path):
     scene = small_scene(tmp_path)
+    scene.write_text(scene.read_text(encoding="utf-8") + SPARE, encoding="utf-8")
     ok("trace", scene, *ONE_ROUND)
+    refused = lumentrace("draw", scene, "--detector", "dusk")
+    assert refused.returncode == 2 and refused.stderr.count("\n") == 1
+    assert 'did you mean "desk"?' in refused.stderr
+    refused = lumentrace("draw", scene, "--top", "11")
+    assert refused.returncode == 2 and refused.stderr.count("\n") == 1
+    assert "allowed: 1 to 10" in refused.stderr
+    assert pictures_in(tmp_path) == []
     files = answer("draw", scene, "--detector", "desk", "--top", "1")["pictures"]
-    assert [Path(file).name.split("-", 2)[2] for file in files] == [
-        "scene.png",
-        "paths-desk.png",
-        "map-desk.png",
-    ]
-    for words in (["--detector", "desk"], ["--top", "11"]):
-        refused = lumentrace("draw", scene, *words)
-        assert refused.returncode == 2 and len(refused.stderr.splitlines()) == 1
-    assert '"desk"' in lumentrace("draw", scene, "--detector", "desk").stderr
+    wanted = ["scene.png", "paths-desk.png", "map-desk.png"]
+    assert [Path(file).name.split("-", 2)[2] for file in files] == wanted
 
 
 def test_a_machine_without_opengl_is_told_what_to_install(tmp_path):
