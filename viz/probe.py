@@ -25,7 +25,8 @@ def make_ready() -> None:
     lacking = [name for name in _EXTRA if importlib.util.find_spec(name) is None]
     if lacking:
         raise UserError(
-            f"pictures need {' and '.join(lacking)}; type: pip install '.[pictures]' in lumentrace's folder"
+            f"pictures need {' and '.join(lacking)}; "
+            "type: pip install '.[pictures]' in lumentrace's folder"
         )
     if sys.platform == "linux" and not os.environ.get("DISPLAY"):
         os.environ.setdefault(_WINDOW, "vtkEGLRenderWindow")

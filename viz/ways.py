@@ -5,10 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from lumentrace.analysis.ledger import PathRow, paths
-from lumentrace.engine.merge import path_hash
 from lumentrace.engine.retrace import retrace
-from lumentrace.engine.state import STEP
-from lumentrace.models.events import EVENTS
 from lumentrace.run.run import Run
 from lumentrace.world.world import World
 
@@ -30,22 +27,8 @@ def strongest(run: Run, world: World, detector: str, number: int) -> list[Drawn]
 
 
 def _ways(world: World, row: PathRow):
-    detector, path = world.detector_names.index(row.detector), _hash(world, row)
+    detector = world.detector_names.index(row.detector)
     for ray in row.rays[:_WAYS]:
-        way = retrace(world, ray).up_to(detector, path)
+        way = retrace(world, ray).up_to(detector, row.hash)
         if way is not None:
             yield way
-
-
-def _hash(world: World, row: PathRow) -> int:
-    """What the engine calls this path."""
-    steps = np.zeros(len(row.steps), STEP)
-    for step, (place, event) in zip(steps, row.steps, strict=True):
-        name, _, run = event.partition(" x")
-        step["step"] = (world.tag_names.index(place) << 4) | EVENTS.index(name)
-        step["run"] = int(run.rstrip("+") or 1)
-    detector, source = (
-        world.detector_names.index(row.detector),
-        world.source_names.index(row.source),
-    )
-    return int(path_hash(detector, source, steps, 0, len(steps)))

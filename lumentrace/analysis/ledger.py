@@ -35,6 +35,7 @@ class PathRow:
     length: float | None  # mean optical length relative to air, in the study's unit
     arrival: float | None  # mean time from source to detector, ns
     rays: tuple[int, ...]  # numbers of some rays on this path, to be traced again
+    hash: int | None  # what the engine calls the path
 
     @property
     def text(self) -> str:
@@ -104,6 +105,7 @@ def _kept(run: Run, rows: np.ndarray, name: str, detector_flux: np.ndarray) -> l
                 length=_number(length[i]),
                 arrival=_number(arrival[i]),
                 rays=tuple(dict.fromkeys(rays[rays >= 0].tolist())),  # one may arrive twice
+                hash=int(table["hash"].values[i]),
             )
         )
     return found
@@ -165,4 +167,5 @@ def _other(name: str, unit: str, batch: np.ndarray, whole: np.ndarray, count: in
         length=None,
         arrival=None,
         rays=(),
+        hash=None,
     )

@@ -205,6 +205,8 @@ def hit_set(mesh, tree, detectors, origin, direction, leaving, skipped, n_skippe
     in contact with it by no more than the gap along the ray. skipped[:n_skipped]: primitives of the
     event that the ray comes from. Returns their number; 0: nothing ahead; -1: more than HITS_MAX.
     """
+    if len(tree.order) == 0:
+        return 0
     sheared = shear(direction[0], direction[1], direction[2])
     inverse = 1.0 / direction[0], 1.0 / direction[1], 1.0 / direction[2]
     count = 0

@@ -253,6 +253,7 @@ def _ledger(world: World, sums: Sums, scale: Scale) -> dict[str, np.ndarray]:
         "flux_unit": flux_units(world),
         "detector_id": paths.detector.copy(),
         "source_id": paths.source.copy(),
+        "hash": paths.hash.copy(),
         "n_steps": paths.n_steps.copy(),
         "step_tag_id": np.where(beyond, -1, tag),
         "step_event_id": np.where(beyond, -1, event),

@@ -98,6 +98,7 @@ VARIABLES = (
     Variable("ledger", "flux_unit", ("detector",), "str", "", "unit of flux and other there"),
     Variable("ledger", "detector_id", ("path",), "int32", "", "row of detector"),
     Variable("ledger", "source_id", ("path",), "int32", "", "row of source"),
+    Variable("ledger", "hash", ("path",), "uint64", "", "what the engine calls the path"),
     Variable("ledger", "n_steps", ("path",), "int32", "1", "steps of the path"),
     Variable("ledger", "step_tag_id", ("path", "step"), "int32", "",
              "row of tag; -1 beyond the path's end"),

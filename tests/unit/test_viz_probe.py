@@ -27,5 +27,5 @@ def test_without_the_extra_it_is_named(monkeypatch):
     monkeypatch.setattr(
         importlib.util, "find_spec", lambda name: None if name == "pyvista" else found(name)
     )
-    with pytest.raises(UserError, match=r"pictures need pyvista; .*lumentrace\[pictures\]"):
+    with pytest.raises(UserError, match=r"pictures need pyvista; type: pip install .*\[pictures\]"):
         probe.make_ready()
