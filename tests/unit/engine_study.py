@@ -19,12 +19,13 @@ def slab(low: float, high: float, half: float = 10.0):
     return box((-half, -half, low), (half, half, high), SIDES)
 
 
-def world_of(study: Study, seed: int = 1, **settings):
+def world_of(study: Study, seed: int = 1, surroundings: str = "air", **settings):
     """The world of a study; settings: keys of its table [trace]."""
     if settings:
         study.tables["trace"] = settings
     path = study.folder / "study.toml"
-    path.write_text(study.text(), encoding="utf-8")
+    text = study.text().replace("[study]", f'[study]\nsurroundings = "{surroundings}"', 1)
+    path.write_text(text, encoding="utf-8")
     return api.build(api.load(path, seed))
 
 

@@ -206,12 +206,7 @@ def test_surroundings_have_their_own_index(new):
     study.part("plate", slab(-1, 0), medium="crown")
     beam(study, 1)
     measured(study, -2, 2)
-    path = study.folder / "study.toml"
-    text = study.text().replace("[study]", '[study]\nsurroundings = "crown"')
-    path.write_text(text)
-    from lumentrace import study as api
-
-    world = api.build(api.load(path))
+    world = world_of(study, surroundings="crown")
     sums = sums_of(world)
     assert path_texts(world, sums) == ["below: plate:top through, plate:bottom through"]
     assert sums.flux[0].sum() == pytest.approx(64 * 1.0, rel=1e-9)
