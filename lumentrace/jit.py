@@ -86,3 +86,12 @@ def uncached_kernel(function):
 def allocating_kernel(function):
     """As `kernel`, for the few functions outside the hot loop that make arrays."""
     return numba.njit(**_OPTIONS)(function)
+
+
+def inlined_kernel(function):
+    """As `kernel`, for the innermost steps of the traversal: always put into the caller.
+
+    Left to itself the compiler calls them with all arrays passed on the stack, at four times the
+    time of a ray.
+    """
+    return numba.njit(**_OPTIONS, _nrt=False, forceinline=True)(function)

@@ -10,7 +10,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from lumentrace.jit import kernel
+from lumentrace.jit import inlined_kernel, kernel
 from lumentrace.kernels.hierarchy import STACK_DEPTH, enters_box
 from lumentrace.kernels.triangle import drawn_back, intersect, shear
 from lumentrace.kernels.vectors import take
@@ -85,7 +85,7 @@ def find_pair(mesh, prim, other):
     return first if first < end and mesh.pair_prim[first] == other else -1
 
 
-@kernel
+@inlined_kernel
 def _is_concave(mesh, face, side, other):
     """Whether two faces that join stand in a hollow, seen from that side of `face`.
 
@@ -100,7 +100,7 @@ def _is_concave(mesh, face, side, other):
     return height * side > 0.0
 
 
-@kernel
+@inlined_kernel
 def _start(mesh, leaving, prim, t, cosine, reach):
     """Distance at which a ray that leaves a face meets a primitive, or inf where it does not.
 
@@ -126,7 +126,7 @@ def _start(mesh, leaving, prim, t, cosine, reach):
     return 0.0 if here else inf
 
 
-@kernel
+@inlined_kernel
 def _meet(mesh, detectors, origin, direction, sheared, leaving, prim):
     """The hit of one primitive: (t, u, v, cosine, reach); t is inf where there is none."""
     cosine = cosine_of(mesh, detectors, prim, direction)

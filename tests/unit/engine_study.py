@@ -56,10 +56,10 @@ def different(one, other, name: str = "sums") -> list[str]:
     if is_dataclass(one):
         found = [different(getattr(one, f.name), getattr(other, f.name), f.name) for f in fields(one)]
         return sum(found, [])
-    if isinstance(one, np.ndarray):
+    if isinstance(one, np.ndarray) and isinstance(other, np.ndarray):
         same = one.shape == other.shape and one.tobytes() == other.tobytes()
     else:
-        same = one == other
+        same = one is other or (np.isscalar(one) and one == other)
     return [] if same else [name]
 
 

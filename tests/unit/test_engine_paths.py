@@ -269,7 +269,7 @@ def test_what_if_sums_are_those_of_the_ledger(plates):
     clear = ~blurred
     assert found[clear][:, : REPEATS_MAX + 1] == pytest.approx(expected[clear], rel=1e-9, abs=1e-9)
     assert (found[clear][:, REPEATS_MAX + 1 :] == 0).all()
-    assert (expected[clear][:, 1:].sum(axis=(1, 2)) > 0).sum() > 60  # keys that were met
+    assert (expected[clear][:, 1:].sum(axis=(1, 2)) > 0).sum() > 50  # keys that were met
     assert (expected[clear][:, 2:].sum(axis=(1, 2)) > 0).sum() > 20  # twice and more
 
 
