@@ -3,17 +3,17 @@
 Nothing heavy is imported before the first call that needs it.
 """
 
-import hashlib
 import os
-import re
 import shlex
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from functools import partial
+from operator import index
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from lumentrace.errors import UserError
+from lumentrace.runs import FoundRun, changed_since, run_name, scene_path
 
 if TYPE_CHECKING:
     from lumentrace.analysis.account import Account
@@ -24,8 +24,9 @@ if TYPE_CHECKING:
     from lumentrace.scene.model import Scene
     from lumentrace.world.world import World
 
-RUN_SUFFIX = ".nc"
-RUNS = "runs"
+RAYS = (1, 10**15)  # least and most, as in scene files
+SEED = (0, 2**63 - 1)  # likewise
+THREADS = (1, 1024)
 
 
 def load(path: str | os.PathLike, seed: int | None = None) -> "Scene":
@@ -35,8 +36,7 @@ def load(path: str | os.PathLike, seed: int | None = None) -> "Scene":
     """
     from lumentrace.scene.read import read_scene
 
-    scene = read_scene(Path(path))
-    return scene if seed is None else replace(scene, study=replace(scene.study, seed=seed))
+    return _seeded(read_scene(Path(path)), seed)
 
 
 def build(scene: "Scene") -> "World":
@@ -63,7 +63,7 @@ def trace(
     from lumentrace.run.make import make_run
 
     world = _world_of(scene, seed)
-    threads = None if threads is None else _at_least_one("threads", threads)
+    threads = None if threads is None else _whole("threads", threads, THREADS)
     enough = None if world.scene.trace.until is None else partial(_known, world)
     sums = trace_world(world, planned_rays(world.scene, rays), threads, progress, enough)
     return make_run(world, sums)
@@ -117,7 +117,7 @@ def planned_rays(scene: "Scene", rays: int | None) -> int:
     """Rays asked for, or the most of them where the scene has `until`."""
     settings = scene.trace
     if rays is not None:
-        return _at_least_one("rays", rays)
+        return _whole("rays", rays, RAYS)
     return settings.rays if settings.until is None else settings.rays_max
 
 
@@ -135,84 +135,12 @@ def schema() -> dict:
     return json_schema()
 
 
-def run_folder(scene: "Scene", out: str | os.PathLike | None) -> Path:
-    """Where runs of a scene go: `out`, or runs/ beside the scene file.
-
-    Raises UserError, before anything is traced, where no file can be written there.
-    """
-    folder = scene.path.parent / RUNS if out is None else Path(out)
-    there = next(p for p in (folder, *folder.absolute().parents) if p.exists())
-    if not there.is_dir():
-        raise UserError(f"{folder}: is not a folder; {there} is a file")
-    if not os.access(there, os.W_OK | os.X_OK):
-        raise UserError(f"{folder}: cannot be written; choose another folder with --out")
-    return folder
-
-
-def run_name(run: "Run") -> str:
-    """STEM-XXXX.nc: the scene file's stem, and a digest of all that made the run."""
-    facts = run.data.attrs
-    made_by = [facts[k] for k in ("lumentrace", "scene_digest", "mesh_digests", "seed", "rays")]
-    digest = hashlib.sha256("\n".join(map(str, made_by)).encode()).hexdigest()
-    return f"{Path(facts['scene']).stem}-{digest[:4]}{RUN_SUFFIX}"
-
-
-def newest_run(scene_path: Path) -> Path:
-    """The newest run of a scene in runs/ beside it.
-
-    Raises UserError with the command to type where there is none.
-    """
-    named = re.compile(re.escape(scene_path.stem) + r"-[0-9a-f]{4}" + re.escape(RUN_SUFFIX))
-    folder = scene_path.parent / RUNS
-    runs = [p for p in folder.glob(f"*{RUN_SUFFIX}") if named.fullmatch(p.name)]
-    if not runs:
-        raise UserError(
-            f"{scene_path}: has no run yet; type: lumentrace trace {shlex.quote(str(scene_path))}"
-        )
-    return max(runs, key=lambda p: (p.stat().st_mtime_ns, p.name))
-
-
-@dataclass(frozen=True)
-class FoundRun:
-    """A run that a user asked for, by its scene or by its own file."""
-
-    run: "Run"
-    path: Path
-    scene: "Scene | None"  # as it is now; None where the run's own file was asked for
-
-
-def find_run(path: str | os.PathLike) -> FoundRun:
-    """The run of a file STEM-XXXX.nc, or else the newest run of a scene file.
-
-    Raises UserError where there is none.
-    """
-    path = Path(path)
-    if path.suffix == RUN_SUFFIX:
-        return FoundRun(open_run(path), path, None)
-    scene = load(path)
-    newest = newest_run(path)
-    return FoundRun(open_run(newest), newest, scene)
-
-
-def changed_since(run: "Run", scene: "Scene") -> list[str]:
-    """The files of a scene that are no longer what a run was made from; [] if all are."""
-    changed = [] if run.data.attrs["scene_digest"] == scene.digest else [scene.path.name]
-    for part in scene.parts:
-        if part.use and run.mesh_digests.get(part.name) != _file_digest(part.mesh):
-            changed.append(part.mesh.name)
-    return list(dict.fromkeys(changed))
-
-
 def world_of(found: FoundRun) -> "World":
     """The world that a run was traced in, to trace some of its rays again.
 
     Raises UserError where the scene file is not near the run or has changed since.
     """
-    name = found.run.data.attrs["scene"]
-    near = [found.path.parent.parent / name, found.path.parent / name, Path(name)]
-    path = found.scene.path if found.scene else next((p for p in near if p.is_file()), None)
-    if path is None:
-        raise UserError(f"{found.path}: its scene {name} is not in the folder above; move it there")
+    path = scene_path(found)
     scene = load(path, seed=found.run.seed)
     changed = changed_since(found.run, scene)
     if changed:
@@ -231,22 +159,27 @@ def _world_of(scene, seed: int | None) -> "World":
         if seed is None or seed == scene.scene.study.seed:
             return scene
         scene = scene.scene
-    if not isinstance(scene, Scene):
-        return build(load(scene, seed))
-    return build(scene if seed is None else replace(scene, study=replace(scene.study, seed=seed)))
+    return build(_seeded(scene, seed) if isinstance(scene, Scene) else load(scene, seed))
 
 
-def _at_least_one(name: str, number: int) -> int:
-    if number < 1:
-        raise UserError(f"{name}: must be at least 1; got {number}")
-    return number
+def _seeded(scene: "Scene", seed: int | None) -> "Scene":
+    if seed is None:
+        return scene
+    return replace(scene, study=replace(scene.study, seed=_whole("seed", seed, SEED)))
 
 
-def _file_digest(path: Path) -> str | None:
+def _whole(name: str, number: int, allowed: tuple[int, int]) -> int:
+    """A whole number within its range, of any integer type. Raises UserError for all else."""
+    least, most = allowed
     try:
-        return hashlib.sha256(path.read_bytes()).hexdigest()
-    except OSError:
-        return None
+        whole = index(number)
+    except TypeError:
+        raise UserError(
+            f"{name}: {number!r} is not a whole number; allowed: {least} to {most}"
+        ) from None
+    if not least <= whole <= most:
+        raise UserError(f"{name}: {whole} is out of range; allowed: {least} to {most}")
+    return whole
 
 
 def _known(world: "World", sums: "Sums") -> bool:

@@ -4,7 +4,7 @@ from pathlib import Path
 
 from lumentrace.errors import UserError
 from lumentrace.run.run import Run
-from lumentrace.study import run_name
+from lumentrace.runs import run_name
 from lumentrace.world.world import World
 from lumentrace_viz.probe import make_ready
 
@@ -21,9 +21,9 @@ def draw_run(
     """Draw a run into a folder; return the files, all written whole.
 
     STEM-scene.png shows everything, STEM-paths-DETECTOR.png a cut with the strongest paths where
-    light arrived, STEM-map-DETECTOR.png the map; STEM is the run's. detector: only this one. paths:
-    how many of the strongest. Raises UserError: an unknown detector, too many paths, what pictures
-    need is not installed, the folder cannot be written.
+    light arrived, STEM-map-DETECTOR.png the map; STEM is the run's. detector: the last two of this
+    one only. paths: how many of the strongest. Raises UserError: an unknown detector, too many
+    paths, what pictures need is not installed, the folder cannot be written.
     """
     number = PATHS if paths is None else paths
     if not 1 <= number <= MOST:
@@ -38,10 +38,11 @@ def draw_run(
 
     stem = Path(run_name(run)).stem
     drawn = {name: strongest(run, world, name, number) for name in names}
-    each = max(1, number // max(1, len(names)))
-    shown = [path for found in drawn.values() for path in found[:each]][:MOST]
-    stage = stage_of(run, world)
-    pages = {f"{stem}-scene": scene_picture(stage, shown)}
+    stage, pages = stage_of(run, world), {}
+    if detector is None:
+        each = max(1, number // max(1, len(names)))
+        shown = [path for found in drawn.values() for path in found[:each]][:MOST]
+        pages[f"{stem}-scene"] = scene_picture(stage, shown)
     for name in names:
         if any(path.ways for path in drawn[name]):
             pages[f"{stem}-paths-{name}"] = section_picture(stage, name, drawn[name])

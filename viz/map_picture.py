@@ -126,6 +126,9 @@ def _caption(page: Page, found: dict[str, Measure], name: str, effective: np.nda
 
 def _number(measure: Measure) -> str:
     unit = "" if measure.unit == "1" else f" {measure.unit}"
-    if measure.value is None or measure.error is None:
-        return "not hit" if measure.upper is None else f"not hit, below {measure.upper:.3g}{unit}"
-    return " ± ".join(format_with_error(measure.value, measure.error)) + unit
+    if measure.error is not None:
+        return " ± ".join(format_with_error(measure.value, measure.error)) + unit
+    # Light arrived, though not in the darkest cell, where a uniformity has a value.
+    unlit = measure.value is not None and measure.name.endswith(".uniformity")
+    text = "darkest cell not hit" if unlit else "not hit"
+    return text if measure.upper is None else f"{text}, below {measure.upper:.3g}{unit}"

@@ -1,6 +1,7 @@
 """The sheet of a picture: title, frame, legend, labels; the look that all pictures share."""
 
 import os
+import warnings
 from pathlib import Path
 
 import numpy as np
@@ -16,6 +17,7 @@ LINE = 24  # height of a line of text
 INK, FAINT, NOT_HIT = "#111827", "#6b7280", "#d1d5db"
 MAP_COLOURS = "inferno"  # perceptually uniform; dark is dark
 _DPI = 100
+_NO_GLYPH = "Glyph .* missing from font|Matplotlib currently does not support .* natively"
 
 
 class Page:
@@ -55,7 +57,10 @@ class Page:
         """Write under a temporary name, then move: whole or not at all. Raises UserError."""
         aside = path.with_name(f".{path.name}.{os.getpid()}.part")
         try:
-            self.figure.savefig(aside, format="png", metadata={"Software": None})
+            with warnings.catch_warnings():
+                # A letter that the font lacks shows as a box; that is all there is to know.
+                warnings.filterwarnings("ignore", _NO_GLYPH)
+                self.figure.savefig(aside, format="png", metadata={"Software": None})
             aside.replace(path)
         except OSError as error:
             raise UserError(f"{path}: cannot be written: {error.strerror or error}") from error

@@ -7,7 +7,6 @@ from matplotlib.colors import to_rgb
 
 from lumentrace.run.run import Run
 from lumentrace.units import grouped
-from lumentrace.world.arrays import OPAQUE
 from lumentrace.world.world import World
 from lumentrace_viz.legend import legend_height, write_legend
 from lumentrace_viz.map_picture import scale_of
@@ -18,7 +17,6 @@ from lumentrace_viz.places import (
     detector_grid,
     glowing_parts,
     part_box,
-    source_faces,
     source_middle,
     source_outline,
 )
@@ -28,10 +26,12 @@ from lumentrace_viz.view import Plane, View, overview, section
 from lumentrace_viz.ways import Drawn
 
 _HEIGHT, _HEAD = 1000, 110
-_LEFT, _RIGHT, _BELOW = SIDE + 60, 110, 66  # around the frame
+_LEFT, _RIGHT, _BELOW = SIDE + 60, 130, 66  # around the frame
 _LEAST = 520  # height of the frame
 _NUDGE = 1e-6  # of the scene's size: a cut through corners of a mesh has no clean outline
+_RIM = 1e-3  # of the parts' size: a cut so near their end opens nothing
 _LIFT = 1e-3  # of the scene's size: maps are seen before faces that they lie on
+_CUTS = "opaque ones brown, transparent ones blue"  # shade.py colours them
 _FACING = 0.2  # cosine of the angle up to which one sees a map
 
 
@@ -61,12 +61,14 @@ def stage_of(run: Run, world: World) -> Stage:
 
 
 def scene_picture(stage: Stage, drawn: list[Drawn]) -> Page:
-    """Everything, seen obliquely from above; opaque parts are cut open."""
+    """Everything, seen obliquely from above; parts that do not emit are cut open."""
     world, glowing = stage.world, glowing_parts(stage.world)
-    cut = [p for p, s in enumerate(stage.solids) if s.kind == OPAQUE and p not in glowing]
-    page, place = _page(stage.run, drawn, "Overview; opaque parts cut open" if cut else "Overview")
+    cut = [p for p in range(len(stage.solids)) if p not in glowing]
+    page, place = _page(
+        stage.run, drawn, f"Overview; parts cut open, {_CUTS}" if cut else "Overview"
+    )
     around = np.concatenate([part_box(world, p) for p in cut]) if cut else stage.points
-    view, plane = overview(stage.points, around, _heart(world, drawn), place[2] / place[3])
+    view, plane = overview(stage.points, around, heart(world, drawn), place[2] / place[3])
     plane = _nudged(plane, stage)
     shown = [opened(s, plane) if p in cut else s for p, s in enumerate(stage.solids)]
     axes = _draw(page, place, stage, shown, view, drawn)
@@ -86,7 +88,7 @@ def section_picture(stage: Stage, detector: str, drawn: list[Drawn]) -> Page:
     ways = [way for path in drawn for way in path.ways]
     target = detector_corners(world, world.detector_names.index(detector))
     boxes = [*(part_box(world, p) for p in _touched(world, drawn)), target]
-    view, plane = section(ways, boxes, _heart(world, drawn), place[2] / place[3])
+    view, plane = section(ways, boxes, heart(world, drawn), place[2] / place[3])
     shown = [opened(s, _nudged(plane, stage)) for s in stage.solids]
     axes = _draw(page, place, stage, shown, view, drawn)
     tags = sorted({name for path in drawn for name, _ in path.row.steps})
@@ -94,25 +96,40 @@ def section_picture(stage: Stage, detector: str, drawn: list[Drawn]) -> Page:
     across, up, toward = ("xyz"[np.abs(v).argmax()] for v in (view.right, view.up, view.toward))
     axes.set_xlabel(f"{across}, {stage.run.length}", size=11, color=INK)
     axes.set_ylabel(f"{up}, {stage.run.length}", size=11, color=INK)
-    at = plane.point @ np.abs(view.toward) + 0.0
-    note = f"Cut at {toward} = {at:.4g} {stage.run.length}; rays are projected onto the cut."
+    rounding = _NUDGE * stage.extent
+    at = rounding * np.round(plane.point @ np.abs(view.toward) / rounding) + 0.0
+    note = f"Parts cut at {toward} = {at:.4g} {stage.run.length}, {_CUTS}."
+    note += " Rays are projected onto the cut."
     corner = view.project(target)
     if (corner.max(axis=0) < view.low).any() or (corner.min(axis=0) > view.high).any():
-        note += f" They go on to {detector}, which lies outside the frame."
+        note = f"{note[:-1]}; they go on to {detector}, outside the frame."
     page.text(place[0] + place[2], place[1] + place[3] + 9, note, size=10, color=FAINT, ha="right")
     return page
 
 
-def _heart(world: World, drawn: list[Drawn]) -> np.ndarray:
-    """(3,) where to cut: the emitting body that the strongest path starts from, else its first
-    event; without a path the first source."""
+def heart(world: World, drawn: list[Drawn]) -> np.ndarray:
+    """(3,) where to cut. On each axis the middle of the source of the strongest path (of the copy
+    that it starts from); where that source is larger than the parts or lies beside them, the
+    path's first event; where that is no better, the middle of the parts."""
     path = next((path for path in drawn if path.ways), None)
-    if path is None:
-        return source_middle(world, 0)
-    source = world.source_names.index(path.row.source)
-    if len(source_faces(world, source)):
-        return source_middle(world, source, path.ways[0][0])
-    return path.ways[0][1]
+    source = 0 if path is None else world.source_names.index(path.row.source)
+    way = None if path is None else path.ways[0]
+    middle = source_middle(world, source, None if way is None else way[0])
+    if not world.part_names:
+        return middle
+    boxes = np.stack([part_box(world, part) for part in range(len(world.part_names))])
+    low, high = boxes[:, 0].min(axis=0), boxes[:, 1].max(axis=0)
+    rest = (low + high) / 2.0
+    if way is not None:
+        rest = np.where(_inside(way[1], low, high), way[1], rest)
+    small = np.ptp(source_outline(world, source), axis=0) <= high - low
+    return np.where(small & _inside(middle, low, high), middle, rest)
+
+
+def _inside(point: np.ndarray, low: np.ndarray, high: np.ndarray) -> np.ndarray:
+    """(3,) on which axes a plane through the point leaves something on both of its sides."""
+    rim = _RIM * (high - low)
+    return (low + rim < point) & (point < high - rim)
 
 
 def _nudged(plane: Plane, stage: Stage) -> Plane:

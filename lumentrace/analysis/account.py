@@ -1,10 +1,10 @@
 """Where all emitted flux went."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
-from lumentrace.run.estimate import standard_error
+from lumentrace.run.estimate import effective_number, standard_error
 from lumentrace.run.run import Run
 from lumentrace.run.variables import FATES
 from lumentrace.scene.model import BULK
@@ -19,6 +19,7 @@ class Flow:
     lumens: float | None  # None where the account has none
     lumens_error: float | None
     share: float  # of the emitted flux
+    effective: float | None  # number of contributions; None for what is not a sum of them
 
 
 @dataclass(frozen=True)
@@ -39,16 +40,18 @@ def account(run: Run) -> Account:
     """The account of a run, summed over the groups of sources."""
     node = run.account
     emitted = node["emitted"].values
-    efficacy = group_efficacy(run)
+    efficacy = _group_efficacy(run)
 
-    def flow(batch: np.ndarray) -> Flow:
-        """batch: (groups, 64) W."""
-        return _flow(batch, float(emitted.sum()), efficacy)
+    def flow(name: str, **at: str) -> Flow:
+        batch, square = node[name].sel(at).values, node[f"{name}_square"].sel(at).values
+        return _flow(batch, square, float(emitted.sum()), efficacy)
 
-    absorbed = {t: flow(node["absorbed"].sel(tag=t).values) for t in node["tag"].values.tolist()}
+    absorbed = {t: flow("absorbed", tag=t) for t in node["tag"].values.tolist()}
     for volume in node["volume"].values[node["filled"].values > 0].tolist():
-        absorbed[f"{volume}:{BULK}"] = flow(node["bulk"].sel(volume=volume).values)
-    ended = {fate: flow(node["ended"].sel(fate=fate).values) for fate in FATES}
+        absorbed[f"{volume}:{BULK}"] = flow("bulk", volume=volume)
+    ended = {fate: flow("ended", fate=fate) for fate in FATES}
+    # signed contributions: no number of equal ones has their spread
+    ended["sampling"] = replace(ended["sampling"], effective=None)
     total = sum(f.value for f in (*absorbed.values(), *ended.values()))
     start = Flow(
         value=float(emitted.sum()),
@@ -56,6 +59,7 @@ def account(run: Run) -> Account:
         lumens=None if efficacy is None else float(emitted @ efficacy),
         lumens_error=None if efficacy is None else 0.0,
         share=1.0,
+        effective=None,
     )
     return Account(
         emitted=start,
@@ -65,12 +69,16 @@ def account(run: Run) -> Account:
     )
 
 
-def _flow(batch: np.ndarray, emitted: float, efficacy: np.ndarray | None) -> Flow:
+def _flow(
+    batch: np.ndarray, square: np.ndarray, emitted: float, efficacy: np.ndarray | None
+) -> Flow:
+    """batch: (groups, 64) W. square: (groups,) W2 of the rays' totals."""
     watts, error = _estimate(batch.sum(axis=0))
+    effective = float(effective_number(watts, square.sum()))
     lumens, lumens_error = None, None
     if efficacy is not None:
         lumens, lumens_error = _estimate(efficacy @ batch)
-    return Flow(watts, error, lumens, lumens_error, watts / emitted)
+    return Flow(watts, error, lumens, lumens_error, watts / emitted, effective)
 
 
 def _estimate(batch: np.ndarray) -> tuple[float, float | None]:
@@ -80,7 +88,7 @@ def _estimate(batch: np.ndarray) -> tuple[float, float | None]:
     return float(batch.mean()), float(standard_error(batch))
 
 
-def group_efficacy(run: Run) -> np.ndarray | None:
+def _group_efficacy(run: Run) -> np.ndarray | None:
     """lm per W of each group of sources, (groups,); None where all are invisible, or where a group
     mixes wavelengths, so that its watts alone do not tell its lumens."""
     sources = run.node("sources")

@@ -19,6 +19,7 @@ from lumentrace.analysis.unseen import Unseen, lost_flux, unseen_of
 from lumentrace.run.run import Run
 
 NOT_HIT = "not hit"
+CELL_NOT_HIT = "cell not hit"  # while light reached the detector
 FEW_NOTE = f"fewer than {FEW:.0f} effective contributions"
 SPREAD_NOTE = "error of the cell, an upper bound on the spread"
 
@@ -54,8 +55,8 @@ def _of_detector(run: Run, name: str) -> Iterator[Measure]:
     yield _of_sample(f"{name}.mean", mean, facts["map_unit"], unseen.mean, unseen.notes)
     for suffix, split in (("", False), ("_split", True)):
         cells = cells_of(run, name, split)
-        yield _extreme(f"{name}.min{suffix}", cells, cells.darkest, unseen)
-        yield _extreme(f"{name}.max{suffix}", cells, cells.brightest, unseen)
+        yield _extreme(f"{name}.min{suffix}", cells, cells.darkest, mean, unseen)
+        yield _extreme(f"{name}.max{suffix}", cells, cells.brightest, mean, unseen)
         yield _uniformity(f"{name}.uniformity{suffix}", cells, mean, unseen)
 
 
@@ -64,11 +65,12 @@ def _of_sample(name: str, sample: Sample, unit: str, unseen: float, notes=()) ->
     return _measure(name, unit, sample.value, sample.error, sample.effective, upper, unseen, notes)
 
 
-def _extreme(name: str, cells: Cells, cell: int, unseen: Unseen) -> Measure:
+def _extreme(name: str, cells: Cells, cell: int, mean: Sample, unseen: Unseen) -> Measure:
     unit, notes = cells.node.attrs["map_unit"], _notes(cells, unseen)
     value, error, effective = cells.value[cell], cells.error(cell), cells.effective[cell]
     upper = cells.largest.upper(UPPER_RATE, cells.blocks)
-    return _measure(name, unit, value, error, effective, upper, unseen.cell, notes)
+    unhit = _unhit(mean)
+    return _measure(name, unit, value, error, effective, upper, unseen.cell, notes, unhit)
 
 
 def _uniformity(name: str, cells: Cells, mean: Sample, unseen: Unseen) -> Measure:
@@ -80,18 +82,25 @@ def _uniformity(name: str, cells: Cells, mean: Sample, unseen: Unseen) -> Measur
     _, upper = ratio_bounds(0.0, dark, mean, UPPER_RATE / 2)
     change = unseen.of_ratio(cells.value[cell], cells.mean, len(cells.value))
     upper = upper if upper < 1.0 else np.inf  # every uniformity is below 1: that is no news
-    return _measure(name, "1", value, error, effective, upper, change, _notes(cells, unseen))
+    notes = _notes(cells, unseen)
+    return _measure(name, "1", value, error, effective, upper, change, notes, _unhit(mean))
+
+
+def _unhit(mean: Sample) -> str:
+    """What is said of a cell without a contribution."""
+    return CELL_NOT_HIT if mean.effective > 0.0 else NOT_HIT
 
 
 def _notes(cells: Cells, unseen: Unseen) -> tuple[str, ...]:
     return unseen.notes if cells.split else (SPREAD_NOTE, *unseen.notes)
 
 
-def _measure(name, unit, value, error, effective, upper, unseen, notes) -> Measure:
-    """A measure with what its count of contributions asks for: without one no error but a bound."""
+def _measure(name, unit, value, error, effective, upper, unseen, notes, unhit=NOT_HIT) -> Measure:
+    """A measure with what its count of contributions asks for: without one no error but a bound,
+    and the note `unhit`."""
     hit = effective > 0.0
     if not hit:
-        notes = (NOT_HIT, *(n for n in notes if n != SPREAD_NOTE))
+        notes = (unhit, *(n for n in notes if n != SPREAD_NOTE))
     elif effective < FEW:
         notes = (FEW_NOTE, *notes)
     return Measure(

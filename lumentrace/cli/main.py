@@ -68,11 +68,24 @@ def _usage(error: click.UsageError) -> str:
     from lumentrace.errors import nearest
 
     command = error.ctx.command if error.ctx else None
-    if isinstance(error, click.NoSuchOption) and command is not None:
-        known = [name for option in command.get_params(error.ctx) for name in option.opts]
+    params = command.get_params(error.ctx) if command else []
+    options = [p for p in params if isinstance(p, click.Option)]
+    if isinstance(error, click.NoSuchOption):
+        known = [name for option in options for name in option.opts]
         return f"{error.option_name}: no such option; {nearest(error.option_name, known)}"
     if isinstance(error, click.MissingParameter) and error.param is not None:
         return f"{error.param.human_readable_name} is missing; see {_command(error)} --help"
     if isinstance(error, click.BadParameter) and error.param is not None:
         return f"{error.param.opts[0]}: {error.message}"
+    if isinstance(error, click.BadOptionUsage) and options:
+        return _misused(error.option_name, options)
     return " ".join(error.format_message().split())
+
+
+def _misused(name: str, options: list[click.Option]) -> str:
+    """For a flag with a value, and for an option without one."""
+    option = next(option for option in options if name in option.opts)
+    if option.is_flag:
+        return f"{name}: takes no value"
+    allowed = getattr(option.type, "allowed", option.metavar)
+    return f"{name}: its value is missing; allowed: {allowed}"

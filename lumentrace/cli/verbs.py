@@ -17,8 +17,28 @@ from lumentrace.cli.words import (
 from lumentrace.errors import nearest
 
 
+class Verb(click.Command):
+    """A verb that can say in one line what is wrong with its words."""
+
+    allow_extra_args = True  # click's own check stops at the first; ours follows
+
+    def parse_args(self, ctx, args):
+        try:
+            super().parse_args(ctx, args)
+        except click.BadOptionUsage as error:
+            error.ctx = ctx  # which click leaves out, and with it whose option it is
+            raise
+        if ctx.args:
+            arguments = [p.metavar for p in self.params if isinstance(p, click.Argument)]
+            allowed = f"{' '.join(arguments)} and options" if arguments else "options only"
+            raise click.UsageError(f"too many words: {' '.join(ctx.args)}; allowed: {allowed}", ctx)
+        return ctx.args
+
+
 class Verbs(click.Group):
     """A group that names the nearest verb where one is unknown."""
+
+    command_class = Verb
 
     def resolve_command(self, ctx, args):
         if args and not args[0].startswith("-") and args[0] not in self.commands:
@@ -79,11 +99,11 @@ def trace(subject, rays, seed, threads, out, as_json):
         bar.stage("Reading the scene and its meshes")
         from time import perf_counter
 
-        from lumentrace import study
+        from lumentrace import runs, study
         from lumentrace.report.trace import trace_json, trace_text
 
         scene = study.load(subject, seed=seed)
-        folder = study.run_folder(scene, out)
+        folder = runs.run_folder(scene, out)
         world = study.build(scene)
         compiling = _tell_compiling(bar)
         started = perf_counter()
@@ -103,16 +123,16 @@ def _tell_compiling(bar) -> bool:
     if study.is_compiled():
         return False
     bar.stage("Compiling")  # until the first rays are done
-    remark("Compiling the tracer for this machine, once: about 20 s.")
+    remark("Compiling the tracer for this machine, once: up to a minute.")
     return True
 
 
 def _find(subject):
     """The run that SCENE|RUN means; says on standard error if its scene has changed since."""
-    from lumentrace import study
+    from lumentrace import runs
 
-    found = study.find_run(subject)
-    changed = study.changed_since(found.run, found.scene) if found.scene else []
+    found = runs.find_run(subject)
+    changed = runs.changed_since(found.run, found.scene) if found.scene else []
     if changed:
         remark(
             f"{found.path}: {', '.join(changed)} changed since this run; trace again for today's"
@@ -147,7 +167,7 @@ def ledger(subject, detector, top, as_json):
 )
 @subject_argument("SCENE|RUN")
 @detector_option()
-@top_option("Paths to draw, strongest first; 6 where left out.")
+@top_option("Paths to draw, strongest first, 1 to 10; 6 where left out.", most=10)
 @json_option()
 def draw(subject, detector, top, as_json):
     """Draw pictures of a run beside it, as PNG files: the parts with the
@@ -155,12 +175,12 @@ def draw(subject, detector, top, as_json):
 
     Takes the newest run of a scene, or a run's file. Needs the extra
     `pictures`."""
-    from lumentrace import study
-    from lumentrace.report.lines import shown_path
+    from lumentrace import runs, study
+    from lumentrace.report.lines import run_line, shown_path
 
     with progress() as bar:
         bar.stage("Reading the run and its scene")
-        found = study.find_run(subject)
+        found = runs.find_run(subject)
         world = study.world_of(found)
         _tell_compiling(bar)
         bar.stage("Drawing")
@@ -170,7 +190,8 @@ def draw(subject, detector, top, as_json):
     if as_json:
         show_json({"file": str(found.path), "pictures": [str(file) for file in files]})
     else:
-        show("\n".join(f"Written: {shown_path(file)}" for file in files))
+        written = (f"Written: {shown_path(file)}" for file in files)
+        show("\n".join([run_line(found.run, found.path), *written]))
 
 
 @lumentrace.command(

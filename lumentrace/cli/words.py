@@ -5,6 +5,8 @@ from pathlib import Path
 
 import click
 
+from lumentrace.study import RAYS, SEED, THREADS
+
 
 class WholeNumber(click.ParamType):
     """A whole number from `least` to `most`, written 2000000, 2_000_000 or 2e6."""
@@ -13,6 +15,10 @@ class WholeNumber(click.ParamType):
         self.least = least
         self.most = most
         self.name = metavar
+
+    @property
+    def allowed(self) -> str:
+        return f"{self.least} to {self.most}"
 
     def convert(self, value, param, ctx) -> int:
         if isinstance(value, int):
@@ -25,7 +31,7 @@ class WholeNumber(click.ParamType):
         if whole is None:
             self.fail(f'"{value}" is not a whole number; write 2000000, 2_000_000 or 2e6', param)
         if not self.least <= whole <= self.most:
-            self.fail(f"{value} is out of range; allowed: {self.least} to {self.most}", param)
+            self.fail(f"{value} is out of range; allowed: {self.allowed}", param)
         return whole
 
 
@@ -46,8 +52,8 @@ def detector_option():
     return click.option("--detector", metavar="NAME", help="Only this detector.")
 
 
-def top_option(meaning: str):
-    return click.option("--top", type=WholeNumber(1, 10**6), help=meaning)
+def top_option(meaning: str, most: int = 10**6):
+    return click.option("--top", type=WholeNumber(1, most), help=meaning)
 
 
 def tracing_options(verb):
@@ -55,16 +61,14 @@ def tracing_options(verb):
     options = (
         click.option(
             "--rays",
-            type=WholeNumber(1, 10**15),
+            type=WholeNumber(*RAYS),
             help="Rays to trace; the most of them where the scene has `until`. "
             "Rounded up to whole rounds of 65,536.",
         ),
-        click.option(
-            "--seed", type=WholeNumber(0, 2**63 - 1), help="In place of the scene's seed."
-        ),
+        click.option("--seed", type=WholeNumber(*SEED), help="In place of the scene's seed."),
         click.option(
             "--threads",
-            type=WholeNumber(1, 1024),
+            type=WholeNumber(*THREADS),
             help="Threads to use; all processors where left out. Results do not depend on it.",
         ),
         click.option(

@@ -3,7 +3,6 @@
 from lumentrace.engine.emit import find_inside, start
 from lumentrace.engine.history import follow, lose
 from lumentrace.engine.state import settle
-from lumentrace.engine.sums import TOO_DEEP
 from lumentrace.jit import kernel
 
 
@@ -25,8 +24,9 @@ def trace_rays(world, rows, first, last, rays, hits, tally):
     ray = rays[0]
     for ray_number in range(first, last):
         start(world, ray, ray_number, tally)
-        if world.sources.immersed[ray.source] and not find_inside(world, ray, hits):
-            lose(tally, rows, ray, ray_number, TOO_DEEP, -1)
-        else:
+        fault = find_inside(world, ray, hits) if world.sources.immersed[ray.source] else -1
+        if fault < 0:
             follow(world, rows, ray, ray_number, hits, tally)
+        else:
+            lose(tally, rows, ray, ray_number, fault, -1)
         settle(tally, world.sources.group[ray.source])

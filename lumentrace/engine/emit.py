@@ -2,6 +2,7 @@
 
 from lumentrace.engine.inside import toggled
 from lumentrace.engine.query import Leaving, cosine_of, find_pair, hit_set, point_of
+from lumentrace.engine.sums import TOO_DEEP, TOO_MANY_AT_ONCE
 from lumentrace.jit import kernel
 from lumentrace.kernels import rng
 from lumentrace.kernels.vectors import frame, set_vector, to_scene, vector
@@ -53,8 +54,8 @@ def begin(ray, tally, origin, direction, face):
     ray.side = 1.0
     ray.fresh = face >= 0
     ray.n_skipped = 0
-    ray.clear = -1
-    ray.cover = -1
+    ray.near = -1
+    ray.far = -1
     ray.n_steps = 0
     ray.reflections = 0
     ray.scatters = 0
@@ -69,7 +70,7 @@ def find_inside(world, ray, hits):
     """Fill in which transparent bodies the start lies in, by what a line from there leaves.
 
     A body that the line crosses an odd number of times holds the start. The line is the ray's own
-    direction, which no mesh is aligned with. Returns False where there are too many.
+    direction, which no mesh is aligned with. Returns -1, or why the ray cannot be followed.
     """
     mesh, bodies = world.mesh, world.bodies
     direction = vector(ray.direction)
@@ -82,7 +83,7 @@ def find_inside(world, ray, hits):
             ray.skipped, n_skipped, hits,
         )  # fmt: skip
         if count < 0:
-            return False
+            return TOO_MANY_AT_ONCE
         if count == 0:
             break
         face = -1
@@ -96,7 +97,7 @@ def find_inside(world, ray, hits):
             if bodies.kind[body] == TRANSPARENT:
                 n_inside = toggled(ray.inside, n_inside, body)
                 if n_inside < 0:
-                    return False
+                    return TOO_DEEP
         n_skipped = count
         if face >= 0:
             origin = point_of(mesh, hits.hit[face])
@@ -109,16 +110,25 @@ def find_inside(world, ray, hits):
                 origin[1] + t * direction[1],
                 origin[2] + t * direction[2],
             )
-            leaving = Leaving(leaving.face, leaving.side, False)
+            leaving = Leaving(leaving.face, leaving.side, leaving.fresh)
     ray.n_inside = n_inside
-    return True
+    return -1
 
 
 @kernel
-def starts_in_gap(world, ray, hit):
-    """Whether the nearest hit of a fresh ray is a face that its own face lies dry on."""
-    row = find_pair(world.mesh, ray.face, hit.prim)
-    if row < 0 or world.mesh.pair_kind[row] != DRY or hit.owner < 0:
-        return False
-    cosine = abs(cosine_of(world.mesh, world.detectors, hit.prim, vector(ray.direction)))
-    return hit.t <= hit.reach + world.mesh.pair_gap[row] / cosine
+def across_the_gap(world, ray, hits, count):
+    """The hit of the face that a fresh ray's own face lies dry on, if it comes first; -1: none.
+
+    A detector in the gap does not count: no light is counted between two faces in contact.
+    """
+    for i in range(count):
+        hit = hits[i]
+        if hit.owner < 0:
+            continue
+        row = find_pair(world.mesh, ray.face, hit.prim)
+        if row >= 0 and world.mesh.pair_kind[row] == DRY:
+            cosine = cosine_of(world.mesh, world.detectors, hit.prim, vector(ray.direction))
+            if hit.t <= hit.reach + world.mesh.pair_gap[row] / abs(cosine):
+                return i
+        return -1
+    return -1

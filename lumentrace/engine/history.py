@@ -2,9 +2,8 @@
 
 from math import inf
 
-from lumentrace.engine.emit import starts_in_gap
+from lumentrace.engine.emit import across_the_gap
 from lumentrace.engine.inside import (
-    AIR,
     acting_body,
     contains,
     index_of,
@@ -18,17 +17,17 @@ from lumentrace.engine.sums import (
     LOST_KEPT,
     NOT_INSIDE,
     STEPS_MAX,
+    STUCK,
     TOO_DEEP,
     TOO_MANY_AT_ONCE,
 )
-from lumentrace.engine.surface import UNCOATED, act, finish_of
+from lumentrace.engine.surface import act, finish_of
 from lumentrace.jit import kernel
 from lumentrace.kernels.vectors import put, set_vector, vector
 from lumentrace.models.dispatch import detector_bin_of, medium_advance
-from lumentrace.world.arrays import DRY, SHEET, TRANSPARENT
+from lumentrace.world.arrays import AIR_ROW, DRY, SHEET, TRANSPARENT, UNCOATED_ROW
 
 NO_UNIFORMS = (0.0, 0.0, 0.0, 0.0)
-HOPS_PER_EVENT = 16  # queries, with those that end at detectors that let pass and hidden surfaces
 
 
 @kernel
@@ -211,8 +210,8 @@ def acting_hit(world, hits, count, before, behind):
     if other < 0:
         return chosen
     tag = world.mesh.tag
-    plain = finish_of(world.tags, tag[hits[chosen].prim], hits[chosen].front) == UNCOATED
-    named = finish_of(world.tags, tag[hits[other].prim], hits[other].front) != UNCOATED
+    plain = finish_of(world.tags, tag[hits[chosen].prim], hits[chosen].front) == UNCOATED_ROW
+    named = finish_of(world.tags, tag[hits[other].prim], hits[other].front) != UNCOATED_ROW
     return other if plain and named else chosen
 
 
@@ -231,41 +230,43 @@ def leave(ray, face, side, hits, count, acting):
 
 
 @kernel
-def act_in_gap(world, rows, ray, tally, factor):
+def act_in_gap(world, rows, ray, ray_number, tally, factor):
     """One event in a dry gap, or at its clear face from inside; False where the ray ends.
 
-    The clear face and the opaque one or sheet lie in one place, with air between. Light in the gap
-    meets the one that it goes toward, until it leaves by one of them. (Light that is emitted into
-    the gap of two opaque faces stays there.)
+    The two faces lie in one place, with air between. Light in the gap meets the one that it goes
+    toward, until it leaves by one of them. (Light that is emitted into the gap of two opaque faces
+    stays there.)
     """
     mesh, bodies = world.mesh, world.bodies
-    clear, cover = ray.clear, ray.cover
-    body = mesh.body[clear]
-    inside = contains(ray.inside, ray.n_inside, body)
+    body = mesh.body[ray.near]
+    is_clear = bodies.kind[body] == TRANSPARENT
+    inside = is_clear and contains(ray.inside, ray.n_inside, body)
     direction = vector(ray.direction)
-    at_clear = inside or cosine_of(mesh, world.detectors, clear, direction) < 0.0
-    face = clear if at_clear else cover
+    off_far = cosine_of(mesh, world.detectors, ray.far, direction) * ray.side > 0.0
+    at_near = inside or off_far
+    face, other = (ray.near, ray.far) if at_near else (ray.far, ray.near)
     front = cosine_of(mesh, world.detectors, face, direction) < 0.0
-    n_air = index_of(world.media, AIR)
-    n_clear = n_air
-    if bodies.kind[body] == TRANSPARENT:
-        n_clear = index_of(world.media, medium_of(bodies, body))
-    n1 = n_clear if inside else n_air
-    n2 = (n_air if inside else n_clear) if at_clear else n_air
+    n_air = index_of(world.media, AIR_ROW)
+    n_near = index_of(world.media, medium_of(bodies, body)) if is_clear else n_air
+    n1 = n_near if inside else n_air
+    n2 = (n_air if inside else n_near) if at_near else n_air
     finish = finish_of(world.tags, mesh.tag[face], front)
     side = act(world, rows, ray, tally, face, finish, n1, n2, factor)
     if side == 0:
         return False
-    stays_in_gap = side < 0 if inside else side > 0
-    if at_clear and side < 0:
+    if at_near and side < 0 and is_clear:
         ray.n_inside = toggled(ray.inside, ray.n_inside, body)
+        if ray.n_inside < 0:
+            lose(tally, rows, ray, ray_number, TOO_DEEP, mesh.tag[face])
+            return False
+    stays_in_gap = side < 0 if inside else side > 0
     if not stays_in_gap:
         ray.face = face
         ray.side = float(side) if front else -float(side)
-        ray.fresh = False
-        ray.skipped[0] = cover if at_clear else clear
+        ray.fresh = side < 0 and not (at_near and is_clear)  # through a sheet: another gap, perhaps
+        ray.skipped[0] = other
         ray.n_skipped = 1
-        ray.clear = -1
+        ray.near = -1
     return True
 
 
@@ -274,19 +275,21 @@ def follow(world, rows, ray, ray_number, scratch, tally):
     """Follow a branch of a ray to its end; everything goes to the tally."""
     mesh, bodies, media = world.mesh, world.bodies, world.media
     hits = scratch.hit
-    factor = 1.0
+    factor = 1.0  # of the whole way since the last surface event
+    hops = 0
     mark(tally, vector(ray.origin))
-    for _ in range(HOPS_PER_EVENT * world.settings.events_max):
+    while hops < hops_max(world):
+        hops += 1
         if ray.events >= world.settings.events_max:
-            break
-        if ray.clear >= 0:
-            if not act_in_gap(world, rows, ray, tally, factor):
+            lose(tally, rows, ray, ray_number, CUT_OFF, mesh.tag[ray.face] if ray.face >= 0 else -1)
+            return
+        if ray.near >= 0:
+            if not act_in_gap(world, rows, ray, ray_number, tally, factor):
                 return
-            factor = 1.0
+            factor, hops = 1.0, 0
             continue
 
-        origin = vector(ray.origin)
-        direction = vector(ray.direction)
+        origin, direction = vector(ray.origin), vector(ray.direction)
         leaving = Leaving(ray.face, ray.side, ray.fresh)
         count = hit_set(
             mesh, world.tree, world.detectors, origin, direction, leaving,
@@ -295,24 +298,27 @@ def follow(world, rows, ray, ray_number, scratch, tally):
         if count < 0:
             lose(tally, rows, ray, ray_number, TOO_MANY_AT_ONCE, -1)
             return
-        if count > 0 and ray.fresh and starts_in_gap(world, ray, hits[0]):
-            ray.clear, ray.cover, ray.fresh = hits[0].prim, ray.face, False
+        across = across_the_gap(world, ray, hits, count) if ray.fresh else -1
+        if across >= 0:
+            ray.near, ray.far, ray.fresh = hits[across].prim, ray.face, False
             continue
 
         before = acting_body(ray.inside, ray.n_inside, bodies.rank)
         medium = medium_of(bodies, before)
-        position, direction, factor, optical, group, _ = medium_advance(
+        # All media let the ray through to the end: the event that is returned is ARRIVED.
+        position, direction, passed, optical, group, _ = medium_advance(
             media.model[medium], media.values[medium], ray.wavelength, origin, direction,
             hits[0].t if count > 0 else inf, NO_UNIFORMS,
         )  # fmt: skip
-        absorbed = ray.weight * (1.0 - factor)
+        factor *= passed
+        absorbed = ray.weight * (1.0 - passed)
         if absorbed > 0.0:
             if before >= 0:
                 deposit(tally, rows.bulk + bodies.part[before], absorbed)
                 deposit(tally, rows.part + bodies.part[before], absorbed)
             else:
                 deposit(tally, rows.surroundings, absorbed)
-            ray.weight *= factor
+            ray.weight *= passed
         if count == 0:
             deposit(tally, rows.escaped, ray.weight)
             mark(tally, far_point(world.tree, origin, direction))
@@ -333,7 +339,8 @@ def follow(world, rows, ray, ray_number, scratch, tally):
             partner = dry_partner(mesh, hits, count, opaque, before)
             if partner >= 0 and hits[partner].owner == before:
                 set_vector(ray.origin, point_of(mesh, hits[partner]))
-                ray.clear, ray.cover = hits[partner].prim, hits[opaque].prim
+                ray.near, ray.far = hits[partner].prim, hits[opaque].prim
+                ray.side = 1.0 if hits[opaque].front else -1.0
                 continue
             acting, n2 = opaque, n1
         elif first >= 0:
@@ -352,7 +359,6 @@ def follow(world, rows, ray, ray_number, scratch, tally):
             for i in range(count):
                 ray.skipped[i] = hits[i].prim
             ray.n_skipped = count
-            ray.fresh = False
             continue
 
         face, front = hits[acting].prim, hits[acting].front
@@ -365,8 +371,15 @@ def follow(world, rows, ray, ray_number, scratch, tally):
         if side < 0 and opaque < 0:
             pass_through(ray)
         if side < 0 and partner >= 0:  # through a sheet that lies dry on another face
-            ray.clear, ray.cover = hits[partner].prim, face
-    lose(tally, rows, ray, ray_number, CUT_OFF, -1)
+            ray.near, ray.far = hits[partner].prim, face
+        factor, hops = 1.0, 0
+    lose(tally, rows, ray, ray_number, STUCK, mesh.tag[ray.face] if ray.face >= 0 else -1)
+
+
+@kernel
+def hops_max(world):
+    """Queries from one surface event to the next that are allowed: far more than can be."""
+    return 1000 + 100 * (len(world.bodies.part) + len(world.detectors.model))
 
 
 @kernel

@@ -7,8 +7,7 @@ and order of the file into one rank, different for every body; the largest acts.
 
 from lumentrace.jit import kernel
 from lumentrace.models.dispatch import medium_index
-
-SURROUNDINGS, AIR = 0, 1  # rows of Media
+from lumentrace.world.arrays import SURROUNDINGS_ROW
 
 
 @kernel
@@ -45,7 +44,7 @@ def acting_body(inside, n, rank):
 @kernel
 def medium_of(bodies, body):
     """Row of Media inside a body, or of the surroundings for -1."""
-    return bodies.medium[body] if body >= 0 else SURROUNDINGS
+    return bodies.medium[body] if body >= 0 else SURROUNDINGS_ROW
 
 
 @kernel

@@ -62,6 +62,24 @@ class Totals(NamedTuple):
     lost_count: np.ndarray  # (1,) int64
 
 
+class OfRay(NamedTuple):
+    """What one ray has added to some rows so far, zeros between rays."""
+
+    total: np.ndarray  # (n,) float64
+    count: np.ndarray  # (n,) int64
+    touched: np.ndarray  # (n,) int64 the rows with a count, in any order
+
+
+class Scratch(NamedTuple):
+    """For `merge_block`; everything is zero between blocks."""
+
+    detector: OfRay
+    cell: OfRay
+    path: OfRay
+    tag_repeats: np.ndarray  # (T,) int64
+    part_repeats: np.ndarray  # (P,) int64
+
+
 @kernel
 def path_hash(detector, source, steps, first, last):
     """64-bit FNV-1a digest of a path: detector, source, and each step with its run up to three.
@@ -162,43 +180,32 @@ def add_what_if(what_if, tags_part, tag_repeats, part_repeats, tally, first, las
 
 
 @kernel
-def _add_squares(totals, ledger, arrivals, path, group_of, first, last):
-    """Squares of what one ray, with arrivals [first, last) of the block, adds to each number."""
-    for i in range(first, last):
-        d, cell = arrivals[i].detector, arrivals[i].cell
-        group = group_of[arrivals[i].source]
-        at_detector = at_cell = on_path = 0.0
-        n_detector = n_cell = 0
-        first_detector = first_cell = first_path = True
-        for j in range(first, last):
-            amount = arrivals[j].amount
-            if arrivals[j].detector == d:
-                at_detector += amount
-                n_detector += 1
-                first_detector = first_detector and j >= i
-            if arrivals[j].cell == cell:
-                at_cell += amount
-                n_cell += 1
-                first_cell = first_cell and j >= i
-            if path[j] == path[i]:
-                on_path += amount
-                first_path = first_path and j >= i
-        if first_detector:
-            totals.flux_square[d, group] += at_detector * at_detector
-            totals.flux_most[d] = max(totals.flux_most[d], n_detector)
-        if first_cell:
-            totals.cell_square[group, cell] += at_cell * at_cell
-            totals.cell_most[d] = max(totals.cell_most[d], n_cell)
-        if first_path and path[i] >= 0:
-            ledger.square[path[i]] += on_path * on_path
+def _gather(of_ray, n, row, amount):
+    """Add to a row of what one ray adds; returns the number of rows touched, n before."""
+    if of_ray.count[row] == 0:
+        of_ray.touched[n] = row
+        n += 1
+    of_ray.total[row] += amount
+    of_ray.count[row] += 1
+    return n
+
+
+@kernel
+def _square_up(of_ray, n, squares):
+    """Add the squares of what one ray added to the n touched rows, and forget it."""
+    for i in range(n):
+        row = of_ray.touched[i]
+        squares[row] += of_ray.total[row] * of_ray.total[row]
+        of_ray.total[row] = 0.0
+        of_ray.count[row] = 0
 
 
 @allocating_kernel
-def merge_block(block, tally, group_of, tags_part, totals, ledger, tag_repeats, part_repeats):
+def merge_block(block, tally, group_of, tags_part, totals, ledger, scratch):
     """Add a block's account and lists to the run's sums.
 
-    group_of: (S,) group of each source. tags_part: (T,) part of each tag. tag_repeats,
-    part_repeats: zeros, (T,) and (P,) int64.
+    group_of: (S,) group of each source. tags_part: (T,) part of each tag. scratch: zeros, and
+    zeros again on return.
     """
     batch = block % BATCHES
     for group in range(tally.account.shape[0]):
@@ -207,8 +214,8 @@ def merge_block(block, tally, group_of, tags_part, totals, ledger, tag_repeats, 
             totals.account_square[group, row] += tally.square[group, row]
     keeps_batches = totals.cell_batch.shape[1] > 0
     arrivals, n = tally.arrival, tally.used[ARRIVALS]
-    path = np.empty(n, np.int64)
-    first_step = first_key = first_of_ray = 0
+    first_step = first_key = 0
+    n_detectors = n_cells = n_paths = 0  # that the ray has touched
     for i in range(n):
         arrival = arrivals[i]
         d, cell, amount = arrival.detector, arrival.cell, arrival.amount
@@ -221,22 +228,29 @@ def merge_block(block, tally, group_of, tags_part, totals, ledger, tag_repeats, 
         else:
             totals.cell_block[group, cell] += amount
         last_step, last_key = arrival.last_step, arrival.last_key
-        path[i] = -1
+        path = -1
         if not arrival.too_long:
-            path[i] = row_of(ledger, d, arrival.source, tally, first_step, last_step)
-        if path[i] >= 0:
-            add_to_path(ledger, path[i], tally, i, first_step, last_step, batch)
+            path = row_of(ledger, d, arrival.source, tally, first_step, last_step)
+        if path >= 0:
+            add_to_path(ledger, path, tally, i, first_step, last_step, batch)
+            n_paths = _gather(scratch.path, n_paths, path, amount)
         else:
             ledger.other[d, group, batch] += amount
             ledger.other_count[d, group] += 1
+        n_detectors = _gather(scratch.detector, n_detectors, d, amount)
+        n_cells = _gather(scratch.cell, n_cells, cell, amount)
+        totals.flux_most[d] = max(totals.flux_most[d], scratch.detector.count[d])
+        totals.cell_most[d] = max(totals.cell_most[d], scratch.cell.count[cell])
         add_what_if(
-            totals.what_if[d, group, batch], tags_part, tag_repeats, part_repeats,
+            totals.what_if[d, group, batch], tags_part, scratch.tag_repeats, scratch.part_repeats,
             tally, first_key, last_key, amount,
         )  # fmt: skip
         first_step, first_key = last_step, last_key
         if i + 1 == n or arrivals[i + 1].ray != arrival.ray:
-            _add_squares(totals, ledger, arrivals, path, group_of, first_of_ray, i + 1)
-            first_of_ray = i + 1
+            _square_up(scratch.detector, n_detectors, totals.flux_square[:, group])
+            _square_up(scratch.cell, n_cells, totals.cell_square[group])
+            _square_up(scratch.path, n_paths, ledger.square)
+            n_detectors = n_cells = n_paths = 0
     if not keeps_batches:
         for i in range(n):
             group, cell = group_of[arrivals[i].source], arrivals[i].cell
@@ -278,4 +292,19 @@ def new_ledger(n_detectors: int, n_groups: int, paths_max: int) -> Ledger:
         ray=np.full((p, KEPT_RAYS), -1, np.int64),
         other=np.zeros((n_detectors, n_groups, BATCHES)),
         other_count=np.zeros((n_detectors, n_groups), np.int64),
+    )
+
+
+def new_scratch(detectors: int, cells: int, paths_max: int, tags: int, parts: int) -> Scratch:
+    """Zeros for so many of each."""
+
+    def of_ray(n):
+        return OfRay(np.zeros(n), np.zeros(n, np.int64), np.zeros(n, np.int64))
+
+    return Scratch(
+        of_ray(detectors),
+        of_ray(cells),
+        of_ray(paths_max),
+        np.zeros(tags, np.int64),
+        np.zeros(parts, np.int64),
     )

@@ -48,7 +48,7 @@ class Leaving(NamedTuple):
 
     face: int  # the face that it leaves, -1: none
     side: float  # +1 on the side of that face's normal, -1 behind it
-    fresh: bool  # it is emitted there, and may stand in a dry gap
+    fresh: bool  # it comes out of that face, emitted or through a sheet: perhaps into a dry gap
 
 
 NOWHERE = Leaving(-1, 1.0, False)
@@ -89,15 +89,18 @@ def find_pair(mesh, prim, other):
 def _is_concave(mesh, face, side, other):
     """Whether two faces that join stand in a hollow, seen from that side of `face`.
 
-    They do if the middle of `face` lies on that side of the plane of `other`.
+    They do if they share a corner and the middle of `face` lies on that side of the plane of
+    `other`.
     """
     height = 0.0
+    join = False
     corner = mesh.corner[other, 0]
     for i in range(3):
         vertex = mesh.corner[face, i]
         for k in range(3):
+            join = join or mesh.corner[other, k] == vertex
             height += (mesh.vertex[vertex, k] - mesh.vertex[corner, k]) * mesh.normal[other, k]
-    return height * side > 0.0
+    return join and height * side > 0.0
 
 
 @inlined_kernel
@@ -111,11 +114,12 @@ def _start(mesh, leaving, prim, t, cosine, reach):
     edge or corner.
     """
     if leaving.face < 0:
-        return t if t > 0.0 else inf
+        return t if t > reach else inf  # what a source lies on is behind it
     row = find_pair(mesh, leaving.face, prim)
     if row >= 0 and abs(t) <= reach + mesh.pair_gap[row] / abs(cosine):
-        faces_the_start = leaving.fresh and mesh.pair_kind[row] == DRY and cosine < 0.0
-        return max(t, 0.0) if faces_the_start else inf
+        two_sided = not mesh.closed[mesh.body[prim]] if prim < len(mesh.body) else False
+        across = mesh.pair_kind[row] == DRY and (cosine < 0.0 or two_sided)
+        return max(t, 0.0) if leaving.fresh and across else inf
     body = mesh.body[leaving.face]
     if prim >= len(mesh.body) or mesh.body[prim] != body:
         return t if t > 0.0 else inf
@@ -138,12 +142,12 @@ def _meet(mesh, detectors, origin, direction, sheared, leaving, prim):
         t, u, v = intersect(
             origin, sheared, mesh.vertex, corner[prim, 0], corner[prim, 1], corner[prim, 2]
         )
-        error = mesh.error[prim]
+        # What lies on a face is no farther off than the face is long, which the margin tells.
+        reach = mesh.error[prim] * min(1.0 / abs(cosine), 64.0 / mesh.margin[prim])
     else:
         d = prim - n_faces
         t, u, v = detector_intersect(detectors.model[d], detectors, d, origin, direction)
-        error = detectors.error[d]
-    reach = error / abs(cosine)
+        reach = detectors.error[d] / abs(cosine)
     if t < inf:
         t = _start(mesh, leaving, prim, t, cosine, reach)
     return t, u, v, cosine, reach

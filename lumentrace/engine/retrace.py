@@ -4,15 +4,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from lumentrace.engine.block import trace_rays
 from lumentrace.engine.merge import path_hash
-from lumentrace.engine.query import new_hits
-from lumentrace.engine.state import ARRIVALS, TRAIL, new_rays, new_tally
-from lumentrace.engine.sums import account_rows
+from lumentrace.engine.state import ARRIVALS, TRAIL
+from lumentrace.engine.worker import Worker
 from lumentrace.world.world import World
 
 _TRAIL_MAX = 4096  # places of a way that are kept
-_ROOM = 1024
 
 
 @dataclass(frozen=True)
@@ -41,19 +38,12 @@ class Way:
 
 def retrace(world: World, ray_number: int) -> Way:
     """Trace ray `ray_number` of the run again and note its way."""
-    arrays = world.arrays
-    n_tags, n_parts = len(world.tag_names), len(world.part_names)
-    rays, hits = new_rays(), new_hits()
-    tally = new_tally(arrays.settings.groups, n_tags, n_parts, _ROOM, _TRAIL_MAX)
-    rows = account_rows(n_tags, n_parts)
-    trace_rays(arrays, rows, ray_number, ray_number + 1, rays, hits, tally)
+    tally = Worker(world, _TRAIL_MAX).trace(ray_number, ray_number + 1)
     arrivals = []
     first = 0
-    for i in range(min(int(tally.used[ARRIVALS]), _ROOM)):
-        arrival = tally.arrival[i]
-        digest = path_hash(
-            arrival["detector"], arrival["source"], tally.step, first, arrival["last_step"]
-        )
+    for arrival in tally.arrival[: tally.used[ARRIVALS]]:
+        last = arrival["last_step"]
+        digest = path_hash(arrival["detector"], arrival["source"], tally.step, first, last)
         arrivals.append(Arrival(int(arrival["detector"]), int(digest), int(arrival["marks"])))
-        first = arrival["last_step"]
+        first = last
     return Way(tally.trail[: tally.used[TRAIL]].copy(), tuple(arrivals))

@@ -7,14 +7,10 @@ import os
 from collections import deque
 from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
-from queue import SimpleQueue
 
 import numpy as np
 
-from lumentrace.engine.block import trace_rays
-from lumentrace.engine.merge import Totals, merge_block, new_ledger
-from lumentrace.engine.query import new_hits
-from lumentrace.engine.state import ARRIVALS, KEYS, STEPS, new_rays, new_tally
+from lumentrace.engine.merge import Totals, merge_block, new_ledger, new_scratch
 from lumentrace.engine.sums import (
     LOST,
     LOST_KEPT,
@@ -25,40 +21,28 @@ from lumentrace.engine.sums import (
     account_rows,
     what_if_keys,
 )
-from lumentrace.world.arrays import BATCHES, BLOCK_RAYS, ROUND_RAYS, WorldArrays
+from lumentrace.engine.worker import Worker
+from lumentrace.errors import UserError
+from lumentrace.world.arrays import BATCHES, BLOCK_RAYS, ROUND_RAYS
 from lumentrace.world.world import World
 
 PATHS_MAX = 16384
-_ROOM = 4096  # arrivals of a block that the lists hold at first; they grow when it takes more
+WHAT_IF_LEAST = 2**30  # bytes that the what-if sums may take however small map_memory is
 
 
-class _Worker:
-    """Scratch for one block at a time."""
-
-    def __init__(self, arrays: WorldArrays, n_parts: int):
-        self.arrays = arrays
-        self.n_tags, self.n_parts = len(arrays.tags.part), n_parts
-        self.rows = account_rows(self.n_tags, n_parts)
-        self.rays = new_rays()
-        self.hits = new_hits()
-        self._make_room(_ROOM)
-
-    def _make_room(self, room: int) -> None:
-        self.room = room
-        self.tally = new_tally(self.arrays.settings.groups, self.n_tags, self.n_parts, room)
-
-    def trace(self, block: int) -> "_Worker":
-        """Trace a block; where the lists were too short, with longer ones again: same numbers."""
-        while True:
-            trace_rays(
-                self.arrays, self.rows, block * BLOCK_RAYS, (block + 1) * BLOCK_RAYS,
-                self.rays, self.hits, self.tally,
-            )  # fmt: skip
-            used = self.tally.used
-            need = max(used[ARRIVALS], used[STEPS] / 8, used[KEYS] / 8)
-            if need <= self.room:
-                return self
-            self._make_room(int(2 * need))
+def _what_if_shape(world: World) -> tuple[int, ...]:
+    """Of the what-if sums. Raises UserError where they would take more than there may be."""
+    groups, detectors = len(world.group_names), len(world.detector_names)
+    keys = what_if_keys(len(world.tag_names), len(world.part_names))
+    shape = detectors, groups, BATCHES, keys, REPEATS_MAX + 2
+    size = 8.0 * np.prod(shape, dtype=float)
+    if size > max(world.scene.trace.map_memory, WHAT_IF_LEAST):
+        raise UserError(
+            f"{world.scene.path.name}: trace.map_memory: the sums of {groups} groups of sources at "
+            f"{detectors} detectors over {len(world.tag_names)} tags take {size / 2**30:.1f} GiB; "
+            "give sources that are dimmed together one `group`, or raise map_memory"
+        )
+    return shape
 
 
 class _Sums:
@@ -86,22 +70,19 @@ class _Sums:
             cell_block_square=np.zeros((groups, 0 if kept else cells)),
             cell_square=np.zeros((groups, cells)),
             cell_block=np.zeros((groups, 0 if kept else cells)),
-            what_if=np.zeros(
-                (detectors, groups, BATCHES, what_if_keys(tags, parts), REPEATS_MAX + 2)
-            ),
+            what_if=np.zeros(_what_if_shape(world)),
             lost=np.zeros(LOST_KEPT, LOST),
             lost_count=np.zeros(1, np.int64),
         )
         self.ledger = new_ledger(detectors, groups, PATHS_MAX)
-        self._tag_repeats = np.zeros(tags, np.int64)
-        self._part_repeats = np.zeros(parts, np.int64)
+        self._scratch = new_scratch(detectors, cells, PATHS_MAX, tags, parts)
 
     def add(self, block: int, tally) -> None:
         """Merge the next block; blocks come in order."""
         arrays = self.world.arrays
         merge_block(
             block, tally, arrays.sources.group, arrays.tags.part, self.totals, self.ledger,
-            self._tag_repeats, self._part_repeats,
+            self._scratch,
         )  # fmt: skip
         self.blocks += 1
 
@@ -171,9 +152,7 @@ def trace_world(
     planned = whole_rounds(rays)
     threads = threads or default_threads()
     sums = _Sums(world)
-    idle: SimpleQueue = SimpleQueue()
-    for _ in range(3 * threads):
-        idle.put(_Worker(world.arrays, len(world.part_names)))
+    idle = [Worker(world) for _ in range(2 * threads)]
     last = planned * BATCHES
     look = 1
     with ThreadPoolExecutor(threads) as pool:
@@ -183,12 +162,14 @@ def trace_world(
             while sums.blocks < last:
                 # Never past the next look: what was traced beyond it would be thrown away.
                 limit = min(last, look * BATCHES) if enough else last
-                while submitted < limit and len(waiting) < 2 * threads:
-                    waiting.append(pool.submit(idle.get().trace, submitted))
+                while submitted < limit and idle:
+                    worker = idle.pop()
+                    first = submitted * BLOCK_RAYS
+                    waiting.append((worker, pool.submit(worker.trace, first, first + BLOCK_RAYS)))
                     submitted += 1
-                worker = waiting.popleft().result()
-                sums.add(sums.blocks, worker.tally)
-                idle.put(worker)
+                worker, done = waiting.popleft()
+                sums.add(sums.blocks, done.result())
+                idle.append(worker)
                 if progress:
                     progress(sums.blocks * BLOCK_RAYS, planned * ROUND_RAYS)
                 if enough and sums.blocks == look * BATCHES:

@@ -31,11 +31,11 @@ RAY = np.dtype(
         ("n_after", "i4"),
         ("face", "i4"),  # face that it leaves, -1: none
         ("side", "f8"),  # side of that face: +1 on the side of the normal, -1 behind it
-        ("fresh", "?"),  # it has just been emitted by that face
+        ("fresh", "?"),  # it comes out of that face, emitted or through a sheet
         ("skipped", "i4", (HITS_MAX,)),  # other primitives of the last event
         ("n_skipped", "i4"),
-        ("clear", "i4"),  # face of the dry gap that it is in, the clear one if any, -1: no gap
-        ("cover", "i4"),  # face on the gap's other side: opaque, or of a sheet
+        ("near", "i4"),  # face of the dry gap that it is in: the clear one if any; -1: no gap
+        ("far", "i4"),  # the gap's other face, opaque or of a sheet; `side` is its side there
         ("step", "i8", (STEPS_MAX,)),  # tag << 4 | event, runs collapsed
         ("run", "i4", (STEPS_MAX,)),  # length of each step's run
         ("n_steps", "i4"),  # more than STEPS_MAX: the path is too long to keep

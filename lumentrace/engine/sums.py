@@ -18,12 +18,13 @@ KEPT_RAYS = 8  # ray numbers kept of each path, to be traced again for pictures
 REPEATS_MAX = 15  # what-if sums tell 1..15 passes apart
 
 # Why a ray could not be followed (column `reason` of `lost`).
-CUT_OFF, TOO_DEEP, TOO_MANY_AT_ONCE, NOT_INSIDE = range(4)
+CUT_OFF, TOO_DEEP, TOO_MANY_AT_ONCE, NOT_INSIDE, STUCK = range(5)
 REASONS = (
     "more events than events_max",
     "inside more transparent parts at once than the engine holds",
     "more parts meet in one place than the engine holds",
     "leaves a part that it is not inside; the mesh may be open there",
+    "crosses more hidden surfaces and detectors in a row than there can be",
 )
 
 

@@ -18,7 +18,6 @@ from lumentrace.models.events import (
 ROULETTE_FROM = 8  # surface events; before that no ray is ended by chance
 ROULETTE_LEAST = 0.1  # smallest chance to survive
 N_EVENTS = len(EVENTS)
-UNCOATED = 0  # row of Finishes
 
 
 @kernel
@@ -40,10 +39,10 @@ def choose_lobe(finishes, finish, incoming, n1, n2, u):
     chosen, albedo = -1, 0.0
     below = u * total
     for i in range(first, last):
-        albedo = lobe_albedo(finishes.lobe_model[i], incoming, n1, n2)
-        part = finishes.lobe_share[i] * albedo
+        here = lobe_albedo(finishes.lobe_model[i], incoming, n1, n2)
+        part = finishes.lobe_share[i] * here
         if part > 0.0:
-            chosen = i
+            chosen, albedo = i, here
             if below < part:
                 break
         below -= part

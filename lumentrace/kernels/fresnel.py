@@ -6,6 +6,7 @@ Born and Wolf, Principles of Optics, section 1.5.2 (equations 20 and 21).
 from cmath import sqrt
 
 from lumentrace.jit import kernel
+from lumentrace.kernels.vectors import refracted_cosine_squared
 
 
 @kernel
@@ -14,11 +15,9 @@ def fresnel(n1, n2, cos_1):
 
     cos_1 is the cosine of the angle of incidence, in (0, 1]. Beyond the critical angle the cosine
     of refraction is imaginary: the reflected amplitudes then have modulus one.
-    r_p is positive where the field keeps its direction at normal incidence reversed in space
-    (r_p = (n2 cos_1 - n1 cos_2) / (n2 cos_1 + n1 cos_2)).
+    The sign of r_p is that of (n2 cos_1 - n1 cos_2) / (n2 cos_1 + n1 cos_2).
     """
-    ratio = n1 / n2
-    cos_2 = sqrt(complex(1.0 - ratio * ratio * (1.0 - cos_1 * cos_1), 0.0))
+    cos_2 = sqrt(complex(refracted_cosine_squared(n1, n2, cos_1), 0.0))
     s = n1 * cos_1 + n2 * cos_2
     p = n2 * cos_1 + n1 * cos_2
     return (
@@ -37,8 +36,7 @@ def power(n1, n2, cos_1):
     R = |r|^2, T = Re(n2 cos_2) / (n1 cos_1) |t|^2; Born and Wolf, section 1.5.3.
     """
     r_s, r_p, t_s, t_p = fresnel(n1, n2, cos_1)
-    ratio = n1 / n2
-    cos_2 = sqrt(complex(1.0 - ratio * ratio * (1.0 - cos_1 * cos_1), 0.0))
+    cos_2 = sqrt(complex(refracted_cosine_squared(n1, n2, cos_1), 0.0))
     widening = (n2 * cos_2).real / (n1 * cos_1)
     return (
         _square(r_s),
@@ -63,6 +61,5 @@ def unpolarised_reflectance(n1, n2, cos_1):
 
 @kernel
 def is_total(n1, n2, cos_1):
-    """Whether all light is reflected: n1 sin > n2."""
-    ratio = n1 / n2
-    return ratio * ratio * (1.0 - cos_1 * cos_1) >= 1.0
+    """Whether all light is reflected: n1 sin >= n2."""
+    return n1 > n2 and refracted_cosine_squared(n1, n2, cos_1) <= 0.0

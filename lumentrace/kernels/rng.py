@@ -18,7 +18,7 @@ _WEYL_0 = np.uint64(0x9E3779B97F4A7C15)  # golden ratio
 _WEYL_1 = np.uint64(0xBB67AE8584CAA73B)  # sqrt(3) - 1
 
 # What the numbers are drawn for; part of the counter, so that purposes never share numbers.
-PLACE, DIRECTION, SEGMENT, SURFACE, LOBE = range(5)
+PLACE, DIRECTION, SURFACE, LOBE = range(4)
 
 
 @intrinsic

@@ -61,6 +61,17 @@ def reflect(dx, dy, dz, nx, ny, nz):
 
 
 @kernel
+def refracted_cosine_squared(n1, n2, cos_1):
+    """cos^2 of the angle of refraction, negative beyond the critical angle.
+
+    1 - (n1/n2)^2 (1 - cos_1^2) by Snell's law, written without the cancellation that would make a
+    boundary of equal indices reflect grazing light.
+    """
+    ratio = n1 / n2
+    return (1.0 - ratio) * (1.0 + ratio) + ratio * ratio * cos_1 * cos_1
+
+
+@kernel
 def refract(dx, dy, dz, nx, ny, nz, n1, n2):
     """Refracted unit direction from index n1 into n2; n is the unit normal against d.
 
@@ -69,7 +80,7 @@ def refract(dx, dy, dz, nx, ny, nz, n1, n2):
     """
     ratio = n1 / n2
     cosine = -dot(dx, dy, dz, nx, ny, nz)
-    along = ratio * cosine - sqrt(1.0 - ratio * ratio * (1.0 - cosine * cosine))
+    along = ratio * cosine - sqrt(refracted_cosine_squared(n1, n2, cosine))
     return normalised(ratio * dx + along * nx, ratio * dy + along * ny, ratio * dz + along * nz)
 
 

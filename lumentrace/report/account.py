@@ -1,16 +1,17 @@
 """The account as a table and as JSON, and the rays that were lost."""
 
 from collections import Counter
+from collections.abc import Container
 
 from lumentrace.analysis.account import Account, Flow
-from lumentrace.report.lines import plural
+from lumentrace.report.lines import FEW_REMARK, few_mark, plural
 from lumentrace.report.table import lay_out, wrap
 from lumentrace.run.run import Run
 from lumentrace.units import format_with_error, grouped, plain
 
 
 def account_json(account: Account) -> dict:
-    """In W; emitted is the sum of the rest."""
+    """In W, with effective numbers of contributions; emitted is the sum of the rest."""
     return {
         "emitted": _flow_json(account.emitted),
         "detected": _flow_json(account.detected),
@@ -23,32 +24,35 @@ def account_json(account: Account) -> dict:
 
 
 def _flow_json(flow: Flow) -> dict:
-    return {"value": flow.value, "error": flow.error}
+    return {"value": flow.value, "error": flow.error, "effective": flow.effective}
 
 
-def account_lines(account: Account, in_lumens: bool) -> list[str]:
+def account_lines(account: Account, in_lumens: bool, clear: Container[str] = ()) -> list[str]:
     """Where the light went, largest first, what chance did to the sum, and how well it closes.
 
-    in_lumens: in lm where the account has lumens; else in W.
+    in_lumens: in lm where the account has lumens; else in W. clear: rows that can absorb nothing,
+    of which it is no news.
     """
     in_lumens = in_lumens and account.emitted.lumens is not None
     unit = "lm" if in_lumens else "W"
     ways = {"detected": account.detected, **account.absorbed, "escaped": account.escaped}
     hit = {name: flow for name, flow in ways.items() if flow.error is not None}
-    rows = [[_head(account, in_lumens), unit, "error", "%"]]
+    rows = [[_head(account, in_lumens), unit, "error", "%", ""]]
     for name, flow in sorted(hit.items(), key=lambda item: -item[1].value):
         rows.append([name, *_cells(flow, in_lumens)])
     for name in ("cut_off", "unresolved", "sampling"):
         flow = getattr(account, name)
         if flow.error is not None:
             rows.append([_LABELS[name], *_cells(flow, in_lumens)])
-    lines = lay_out(rows, "<>>>")
-    unhit = [name for name, flow in ways.items() if flow.error is None and name in account.absorbed]
+    lines = lay_out(rows, "<>>><")
+    unhit = [n for n, flow in account.absorbed.items() if flow.error is None and n not in clear]
     if unhit:
         lines += wrap(f"Nothing absorbed: {', '.join(unhit)}.")
     if account.cut_off.error is None and account.unresolved.error is None:
         lines.append("No light was cut off, none is unresolved.")
     lines.append(f"Sum less emitted: {account.closure:.0e} of the emitted.")
+    if any(row[-1] for row in rows):
+        lines.append(FEW_REMARK)
     return lines
 
 
@@ -71,7 +75,7 @@ def _head(account: Account, in_lumens: bool) -> str:
 def _cells(flow: Flow, in_lumens: bool) -> list[str]:
     value, error = (flow.lumens, flow.lumens_error) if in_lumens else (flow.value, flow.error)
     share = round(100.0 * flow.share, 2) + 0.0  # no "-0.00"
-    return [*format_with_error(value, error), f"{share:.2f}"]
+    return [*format_with_error(value, error), f"{share:.2f}", few_mark(flow.effective)]
 
 
 def lost_json(run: Run) -> dict:

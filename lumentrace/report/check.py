@@ -1,5 +1,7 @@
 """What `check` says of a world: the parts, what touches, where light starts and is counted."""
 
+from itertools import zip_longest
+
 import numpy as np
 
 from lumentrace.photometry import EFFICACY, luminosity
@@ -11,11 +13,15 @@ from lumentrace.report.lines import (
     notices_of,
     plural,
 )
-from lumentrace.report.table import lay_out
-from lumentrace.scene.model import Detector, Source
-from lumentrace.units import plain
+from lumentrace.report.table import GAP, WIDTH, lay_out, wrap
+from lumentrace.scene.model import SHEET, Detector, Faces, Limit, Source, TraceSettings, Until
+from lumentrace.units import grouped, plain
 from lumentrace.world.arrays import BLOCK_RAYS
+from lumentrace.world.sources import source_key
 from lumentrace.world.world import World
+
+_TAKEN_WIDTH = 34  # of what a contact is taken as; longer texts take further lines
+_NAME_WIDTH = 24  # of the names of sources
 
 
 def check_text(world: World) -> str:
@@ -38,7 +44,7 @@ def check_json(world: World) -> dict:
     study = world.scene.study
     share = _ray_shares(world)
     return {
-        "scene": str(world.scene.path),
+        "scene": world.scene.path.name,
         "digest": world.scene.digest,
         "title": study.title,
         "length": study.length,
@@ -59,6 +65,7 @@ def check_json(world: World) -> dict:
             t.name: {"faces": t.faces, "area": t.area, "share": t.share, "finish": t.finish}
             for t in world.tags
         },
+        "touch": list(world.touch),
         "contacts": [
             {"parts": list(c.parts), "area": c.area, "gap": c.gap, "taken": c.taken}
             for c in world.contacts
@@ -68,7 +75,10 @@ def check_json(world: World) -> dict:
                 "flux": float(world.source_flux[i]),
                 "wavelength": s.wavelength,
                 "group": s.group,
+                "share": s.share,
                 "ray_share": float(share[i]),
+                "pattern": {"kind": s.pattern.kind, "value": s.pattern.value},
+                "faces": _faces_json(s),
                 "start": world.source_start[i],
             }
             for i, s in enumerate(used_sources(world))
@@ -83,12 +93,28 @@ def check_json(world: World) -> dict:
             }
             for d in _used_detectors(world)
         },
+        "trace": {
+            "rays": world.scene.trace.rays,
+            "until": _until_json(world.scene.trace.until),
+            "rays_max": world.scene.trace.rays_max,
+        },
         "limits": [
             {"measure": m.measure, "at_least": m.at_least, "at_most": m.at_most, "note": m.note}
             for m in world.scene.limits
         ],
         "notices": notices_json(notices_of(world)),
     }
+
+
+def _faces_json(source: Source) -> dict | None:
+    shape = source.shape
+    return {"part": shape.part, "tag": shape.tag} if isinstance(shape, Faces) else None
+
+
+def _until_json(until: Until | None) -> dict | None:
+    if until is None:
+        return None
+    return {"measure": until.measure, "relative_error": until.relative_error}
 
 
 def used_sources(world: World) -> list[Source]:
@@ -118,7 +144,20 @@ def _head(world: World) -> list[str]:
         plural(len(world.detector_names), "detector"),
         plural(len(world.scene.limits), "limit"),
     ]
-    return [*head(world.scene.path.name, study.title), f"{', '.join(counts)}. Unit {study.length}."]
+    return [
+        *head(world.scene.path.name, study.title),
+        f"{', '.join(counts)}. Unit {study.length}.",
+        *wrap(f"Planned: {_planned(world.scene.trace)}."),
+    ]
+
+
+def _planned(trace: TraceSettings) -> str:
+    """Where a trace ends."""
+    if trace.until is None:
+        return f"{grouped(trace.rays)} rays"
+    goal = f"{100 * trace.until.relative_error:g} %"
+    most = grouped(trace.rays_max)
+    return f"until {trace.until.measure} is known within {goal}, at most {most} rays"
 
 
 def _short(value: float) -> str:
@@ -145,7 +184,7 @@ def _parts(world: World) -> list[str]:
                 _size(p.size),
                 _size(p.size, study.metre),
                 str(p.faces),
-                p.medium if p.closed else f"{p.medium}, open",
+                p.medium if p.closed or p.medium == SHEET else f"{p.medium}, open",
             ]
         )
     if study.length == "m":
@@ -163,15 +202,37 @@ def _tags(world: World) -> list[str]:
 
 def _contacts(world: World) -> list[str]:
     unit = world.scene.study.length
-    rows = [["touching", f"area {unit}2", f"gap {unit}", "taken as"]]
+    rows = [[f"touching ({_within(world)})", f"area {unit}2", f"gap {unit}", "taken as"]]
     for c in world.contacts:
-        rows.append([", ".join(c.parts), _short(c.area), f"{c.gap:.2g}", c.taken])
+        area = "-" if c.area is None else _short(c.area)
+        gap = "-" if c.gap is None else f"{c.gap:.2g}"
+        taken, *more = wrap(c.taken, _TAKEN_WIDTH)
+        rows.append([", ".join(c.parts), area, gap, taken])
+        rows.extend(["", "", "", text] for text in more)
     return _table(rows, "<>><")
+
+
+def _within(world: World) -> str:
+    """The tolerance of touching; without one of the study each file has its own."""
+    low, high = (f"{x:.2g}" for x in world.touch)
+    unit = world.scene.study.length
+    return f"within {high} {unit}" if low == high else f"within {low} to {high} {unit}"
 
 
 def _flux(watts: float, wavelength: float) -> str:
     lumens = EFFICACY * luminosity(wavelength) * watts
     return f"{plain(watts)} W" if lumens == 0 else f"{plain(lumens)} lm ({_short(watts)} W)"
+
+
+def _shines_from(source: Source, watts: float, copies: dict[str, int]) -> str:
+    """``die:top, 24 x 90 lm = 2160 lm (3.163 W)``, ``disc, 100 lm (0.1464 W)``."""
+    shape, flux = source.shape, _flux(watts, source.wavelength)
+    if not isinstance(shape, Faces):
+        return f"{source_key(source)}, {flux}"
+    place = shape.part if shape.tag is None else f"{shape.part}:{shape.tag}"
+    n = copies[shape.part]
+    each = _flux(watts / n, source.wavelength).partition(" (")[0]
+    return f"{place}, {n} x {each} = {flux}" if n > 1 else f"{place}, {flux}"
 
 
 def _pattern(source: Source) -> str:
@@ -182,20 +243,26 @@ def _pattern(source: Source) -> str:
 
 
 def _sources(world: World) -> list[str]:
-    rows = [["source", "flux", "nm", "pattern", "of rays", "starts in"]]
+    rows = [["source", ""]]
+    copies = {p.name: p.copies for p in world.parts}
     shares = _ray_shares(world)
     for i, source in enumerate(used_sources(world)):
-        rows.append(
-            [
-                source.name,
-                _flux(float(world.source_flux[i]), source.wavelength),
-                f"{source.wavelength:g}",
-                _pattern(source),
-                f"{100 * shares[i]:.3g} %",
-                world.source_start[i],
-            ]
-        )
-    return _table(rows, "<<><><", elastic=5)
+        facts = [
+            f"{_shines_from(source, float(world.source_flux[i]), copies)} at "
+            f"{source.wavelength:g} nm",
+            _pattern(source),
+            *([f"group {source.group}"] if source.group != source.name else []),
+            f"{100 * shares[i]:.3g} % of the rays",
+            f"starts in {world.source_start[i]}",
+        ]
+        rows.append([source.name, ", ".join(facts)])
+    width = min(max(len(row[0]) for row in rows), _NAME_WIDTH)
+    lines = [rows[0][0]]
+    for name, facts in rows[1:]:
+        names, texts = wrap(name, width), wrap(facts, WIDTH - GAP - width, "")
+        both = zip_longest(names, texts, fillvalue="")
+        lines.extend(f"{left:{width}}{' ' * GAP}{right}".rstrip() for left, right in both)
+    return lines if len(lines) > 1 else []
 
 
 def _detectors(world: World) -> list[str]:
@@ -218,13 +285,33 @@ def _detectors(world: World) -> list[str]:
 
 
 def _limits(world: World) -> list[str]:
+    """Each bound on a line of its own, a note beside the first where there is room."""
     detectors = {d.name: d for d in _used_detectors(world)}
-    rows = [["limit", "", "note"]]
-    for m in world.scene.limits:
-        rows.append(
-            [m.measure, limit_text(m.at_least, m.at_most, _unit(m.measure, detectors)), m.note]
-        )
-    return _table(rows, "<<<", elastic=2)
+    bounds = [_bounds(m, _unit(m.measure, detectors)) for m in world.scene.limits]
+    if not bounds:
+        return []
+    wide = max(len(text) for texts in bounds for text in texts)
+    longest = max(len(m.measure) for m in world.scene.limits)
+    measure_width = min(max(longest, len("limit")), WIDTH - GAP - wide)
+    gap = " " * GAP
+    room = WIDTH - measure_width - wide - 2 * GAP
+    beside = any(0 < len(m.note) <= room for m in world.scene.limits)
+    lines = [f"{'limit':{measure_width}}{gap}{'':{wide}}{gap}{'note' if beside else ''}".rstrip()]
+    for limit, texts in zip(world.scene.limits, bounds, strict=True):
+        both = zip_longest(wrap(limit.measure, measure_width), texts, fillvalue="")
+        block = [f"{left:{measure_width}}{gap}{right:{wide}}" for left, right in both]
+        if len(limit.note) <= room:
+            block[0] += gap + limit.note
+        else:
+            block += wrap(f"  note: {limit.note}", indent="    ")
+        lines += [line.rstrip() for line in block]
+    return lines
+
+
+def _bounds(limit: Limit, unit: str) -> list[str]:
+    """``at least 500 lx`` and ``at most 800 lx``, each where it is given."""
+    sides = ((limit.at_least, None), (None, limit.at_most))
+    return [limit_text(*side, unit) for side in sides if side != (None, None)]
 
 
 def _unit(measure: str, detectors: dict[str, Detector]) -> str:

@@ -3,15 +3,14 @@
 from pathlib import Path
 
 from lumentrace.analysis.ledger import PathRow, paths
-from lumentrace.analysis.samples import FEW
-from lumentrace.report.lines import CAUTION, head, plural, shown_path
+from lumentrace.analysis.unseen import unseen_of
+from lumentrace.report.lines import CAUTION, FEW_REMARK, few_mark, head, plural, run_line
 from lumentrace.report.table import WIDTH, lay_out
 from lumentrace.run.run import Run
 from lumentrace.units import format_with_error, grouped
 
 TOP = 10
 _INDENT = 5
-_FEW = f"few: fewer than {FEW:.0f} effective contributions, so that the error is rough."
 
 
 def ledger_json(run: Run, path: Path, detector: str | None, top: int | None) -> dict:
@@ -34,6 +33,10 @@ def ledger_json(run: Run, path: Path, detector: str | None, top: int | None) -> 
                 "upper": row.upper,
                 "count": row.count,
                 "effective": row.effective,
+                "reflections": row.reflections,
+                "scatters": row.scatters,
+                "length": row.length,
+                "arrival_ns": row.arrival,
             }
             for name in _wanted(run, detector)
             for row in paths(run, name)[:top]
@@ -45,14 +48,14 @@ def ledger_text(run: Run, path: Path, detector: str | None, top: int | None) -> 
     """The `top` strongest paths to each detector, each on lines of its own, 80 columns wide."""
     opening = [
         *head(run.data.attrs["scene"], run.title),
-        f"{shown_path(path)}: {grouped(run.rays)} rays, seed {run.seed}.",
+        run_line(run, path),
     ]
     blocks = [opening]
     blocks += [_detector(run, name, top or TOP) for name in _wanted(run, detector)]
     if not run.detectors:
         blocks.append(["The scene has no detector."])
     few = any(line.endswith("few") for block in blocks for line in block)
-    blocks.append([_FEW, CAUTION] if few else [CAUTION])
+    blocks.append([FEW_REMARK, CAUTION] if few else [CAUTION])
     return "\n\n".join("\n".join(block) for block in blocks) + "\n"
 
 
@@ -66,7 +69,7 @@ def _wanted(run: Run, detector: str | None) -> tuple[str, ...]:
 def _detector(run: Run, name: str, top: int) -> list[str]:
     rows = paths(run, name)
     if not rows:
-        return [f"{name}: no light arrived."]
+        return [f"{name}: no light arrived.", *_unseen(run, name)]
     shown = rows[:top]
     share = sum(row.share or 0.0 for row in shown)
     unit = shown[0].unit
@@ -78,7 +81,15 @@ def _detector(run: Run, name: str, top: int) -> list[str]:
     lines = [f"{found}.", table[0]]
     for numbers, row in zip(table[1:], shown, strict=True):
         lines += [numbers, *_steps(row)]
-    return lines
+    return [*lines, *_unseen(run, name)]
+
+
+def _unseen(run: Run, name: str) -> list[str]:
+    """The most that lost light could add to a detector."""
+    most = unseen_of(run, name).flux
+    unit = run.detector(name).attrs["flux_unit"]
+    told = f"Light cut off or unresolved could add up to {most:.2g} {unit} here."
+    return [told] if most > 0.0 else []
 
 
 def _cells(number: int, row: PathRow) -> list[str]:
@@ -86,14 +97,13 @@ def _cells(number: int, row: PathRow) -> list[str]:
     if row.share is not None:
         error = None if row.share_error is None else 100.0 * row.share_error
         share, share_error = format_with_error(100.0 * row.share, error)
-    few = row.effective is not None and row.effective < FEW
     return [
         str(number),
         *format_with_error(row.flux, row.error),
         share,
         share_error,
         grouped(row.count),
-        "few" if few else "",
+        few_mark(row.effective),
     ]
 
 

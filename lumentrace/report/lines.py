@@ -4,15 +4,17 @@ import os
 from collections.abc import Iterable
 from pathlib import Path
 
+from lumentrace.analysis.samples import FEW
 from lumentrace.errors import Notice
 from lumentrace.report.table import wrap
-from lumentrace.units import plain
+from lumentrace.run.run import Run
+from lumentrace.units import grouped, plain
 from lumentrace.world.world import World
 
 
 def plural(number: int, noun: str) -> str:
-    """1 part, 2 parts."""
-    return f"{number} {noun}" if number == 1 else f"{number} {noun}s"
+    """1 part, 2 parts, 15 485 rays."""
+    return f"{grouped(number)} {noun}" if number == 1 else f"{grouped(number)} {noun}s"
 
 
 def head(file: str, title: str) -> list[str]:
@@ -51,4 +53,15 @@ def shown_path(path: Path) -> str:
     return str(path) if relative.startswith(os.pardir) else relative
 
 
+def run_line(run: Run, path: Path) -> str:
+    """Which run is meant."""
+    return f"{shown_path(path)}: {grouped(run.rays)} rays, seed {run.seed}."
+
+
+def few_mark(effective: float | None) -> str:
+    """ "few" where so few contributions were counted that the error is rough; see FEW_REMARK."""
+    return "few" if effective is not None and effective < FEW else ""
+
+
+FEW_REMARK = f"few: fewer than {FEW:.0f} effective contributions, so that the error is rough."
 CAUTION = "Simulated: confirm by measurement."

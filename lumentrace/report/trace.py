@@ -17,6 +17,7 @@ from lumentrace.report.lines import (
 from lumentrace.report.measures import limits_json, measure_lines, measures_json
 from lumentrace.report.table import wrap
 from lumentrace.run.run import Run
+from lumentrace.scene.model import BULK, UNCOATED
 from lumentrace.units import grouped
 from lumentrace.world.world import World
 
@@ -52,7 +53,7 @@ def trace_text(
     blocks = (
         [*head(run.data.attrs["scene"], run.title), *_traced(run, world, found, asked, lasted)],
         measure_lines(found, run.limits, single),
-        account_lines(account(run), in_lumens),
+        account_lines(account(run), in_lumens, _clear(world)),
         lost_lines(run),
         notice_lines(n for n in notices_of(world) if n.kind == "doubtful"),
         [
@@ -83,6 +84,14 @@ def _traced(run: Run, world: World, found: dict[str, Measure], asked, lasted) ->
     elif wanted != run.rays:
         sentences.append(f"Rounded up from {grouped(wanted)} to whole rounds.")
     return wrap(" ".join(sentences))
+
+
+def _clear(world: World) -> set[str]:
+    """Rows of the account that can absorb nothing: uncoated tags and clear media."""
+    media = world.scene.media
+    tags = {tag.name for tag in world.tags if tag.finish == UNCOATED}
+    filled = [p for p in world.parts if p.medium in media and not media[p.medium].absorption]
+    return tags | {f"{p.name}:{BULK}" for p in filled}
 
 
 def _duration(seconds: float) -> str:

@@ -86,14 +86,14 @@ def _units(world: World) -> dict[str, str]:
     return {"length": world.scene.study.length}
 
 
-def flux_units(world: World) -> list[str]:
+def _flux_units(world: World) -> list[str]:
     """Unit of the flux on each detector."""
     return ["lm" if p else "W" for p in world.tables.detectors.photometric]
 
 
 def _ledger_units(world: World) -> dict[str, str]:
     """With the unit of flux where all detectors share one; else the rows name theirs."""
-    units = set(flux_units(world))
+    units = set(_flux_units(world))
     return _units(world) | ({"flux": units.pop()} if len(units) == 1 else {})
 
 
@@ -190,7 +190,7 @@ def _detector_facts(world: World, sums: Sums, d: int) -> dict:
         "size": size,
         "area": area,
         "cell_area": area / int(np.prod(detectors.cells[d])),
-        "flux_unit": flux_units(world)[d],
+        "flux_unit": _flux_units(world)[d],
         "map_unit": "lx" if photometric else "W/m2",
         "arrivals_most": int(sums.flux_most[d]),
         "cell_arrivals_most": int(sums.cell_most[d]),
@@ -250,7 +250,7 @@ def _ledger(world: World, sums: Sums, scale: Scale) -> dict[str, np.ndarray]:
         "group": world.group_names,
         "tag": world.tag_names,
         "event": EVENTS,
-        "flux_unit": flux_units(world),
+        "flux_unit": _flux_units(world),
         "detector_id": paths.detector.copy(),
         "source_id": paths.source.copy(),
         "hash": paths.hash.copy(),

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from lumentrace.errors import UserError, nearest
+from lumentrace.world.arrays import BATCHES
 
 if TYPE_CHECKING:
     import xarray
@@ -79,7 +80,7 @@ class Run:
     @property
     def blocks(self) -> int:
         """Blocks of 1024 rays, 64 a round."""
-        return 64 * self.rounds
+        return BATCHES * self.rounds
 
     @property
     def limits(self) -> list[dict]:

@@ -100,6 +100,12 @@ def _pattern(form: SourceForm, shape: str, place: Place) -> Pattern:
     written = form.pattern
     if shape == "point" and written not in (None, "isotropic"):
         raise place.error("pattern", 'a point has no normal; its pattern is "isotropic"')
+    if shape == "faces" and written == "isotropic":
+        raise place.error(
+            "pattern",
+            '"isotropic" would shine into the part; over the half space before its faces it is '
+            "{ cosine_power = 0 }",
+        )
     if written is None and shape != "point":
         raise place.error("pattern", f"is missing; allowed: {PATTERNS}")
     if isinstance(written, PatternForm):

@@ -11,7 +11,8 @@ import numpy as np
 
 OPAQUE, SHEET, TRANSPARENT = 0, 1, 2
 DRY, OPTICAL = 0, 1
-NO_BODY = -1
+SURROUNDINGS_ROW, AIR_ROW = 0, 1  # of Media: what is around all parts, what fills a dry gap
+UNCOATED_ROW = 0  # of Finishes
 BATCHES = 64
 BLOCK_RAYS = 1024
 ROUND_RAYS = BATCHES * BLOCK_RAYS
@@ -93,7 +94,7 @@ class Sources(NamedTuple):
     ray_flux: np.ndarray  # (S,) float64 W with which a ray starts: flux / rays in a block
     ray_first: np.ndarray  # (S + 1,) int32 rays of a block, dealt in file order; last is 1024
     group: np.ndarray  # (S,) int32
-    key: np.ndarray  # (S,) uint64 digest of the name and the purpose, for the random numbers
+    key: np.ndarray  # (S,) uint64 digest of the name, for the random numbers
     immersed: np.ndarray  # (S,) bool: may start inside a transparent body or against one
     face_first: np.ndarray  # (S + 1,) int32
     face: np.ndarray  # (E,) int32 emitting faces

@@ -11,12 +11,23 @@ def box_pairs(lower_a, upper_a, lower_b, upper_b):
     """
     if len(lower_a) == 0 or len(lower_b) == 0:
         return np.empty(0, np.int64), np.empty(0, np.int64)
-    if len(lower_a) > len(lower_b):  # a query costs more than a row of the index
-        found_b, found_a = _queried(lower_b, upper_b, lower_a, upper_a)
+    # A comparison costs far less than a query or a row of the index.
+    row_a = _meeting(lower_a, upper_a, lower_b.min(axis=0), upper_b.max(axis=0))
+    row_b = _meeting(lower_b, upper_b, lower_a.min(axis=0), upper_a.max(axis=0))
+    if len(row_a) == 0 or len(row_b) == 0:
+        return np.empty(0, np.int64), np.empty(0, np.int64)
+    a, b = (lower_a[row_a], upper_a[row_a]), (lower_b[row_b], upper_b[row_b])
+    if len(row_a) > len(row_b):  # a query costs more than a row of the index
+        found_b, found_a = _queried(*b, *a)
     else:
-        found_a, found_b = _queried(lower_a, upper_a, lower_b, upper_b)
+        found_a, found_b = _queried(*a, *b)
     order = np.lexsort((found_b, found_a))
-    return found_a[order], found_b[order]
+    return row_a[found_a[order]], row_b[found_b[order]]
+
+
+def _meeting(lower, upper, low, high):
+    """Rows of boxes, (n, 3), that share at least a point with one box."""
+    return np.flatnonzero(((upper >= low) & (lower <= high)).all(axis=1))
 
 
 def _queried(lower, upper, held_lower, held_upper):

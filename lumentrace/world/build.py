@@ -11,6 +11,7 @@ from lumentrace.scene.measures import part_and_tag
 from lumentrace.scene.model import BULK, Faces, Scene, Source
 from lumentrace.world.arrays import TRANSPARENT, Bodies, Settings, WorldArrays
 from lumentrace.world.bodies import Body, BuiltPart, placed
+from lumentrace.world.buried import buried_detector, buried_source
 from lumentrace.world.contacts import touch_distances
 from lumentrace.world.detectors import detector_table
 from lumentrace.world.doubts import detector_doubts, rounding_doubts, stack_doubts, start_doubts
@@ -22,10 +23,11 @@ from lumentrace.world.materials import finish_tables, medium_table
 from lumentrace.world.meshes import MeshFile, part_mesh, read_file
 from lumentrace.world.nesting import ranks
 from lumentrace.world.scene_mesh import Joined, joined, mesh_arrays, touching
+from lumentrace.world.shared import shared_room
 from lumentrace.world.sources import Lit, emitting_faces, source_table, watts
 from lumentrace.world.start_media import shown, start_media
 from lumentrace.world.tags import part_tags
-from lumentrace.world.world import World
+from lumentrace.world.world import ContactFacts, World
 
 
 def build_world(scene: Scene) -> World:
@@ -60,11 +62,13 @@ def build_world(scene: Scene) -> World:
     around = scene.study.surroundings
     starts = [start_media(one, parts, bodies, rank, mesh, touch, around) for one in lit]
     for one, there in zip(lit, starts, strict=True):
-        notices += start_doubts(scene, one.source.name, there)
+        notices += start_doubts(scene, one.source, there)
+        notices += buried_source(one, parts, bodies, touch)
     notices += stack_doubts(scene, parts, bodies)
     notices += rounding_doubts(parts, bodies, whole.facets.altitude)
     for detector, frame in zip(detectors, frames, strict=True):
         notices += detector_doubts(detector, *frame, mesh, bodies, float(touch.max(initial=0.0)))
+        notices += buried_detector(detector, *frame, parts, bodies, float(touch.max(initial=0.0)))
     return World(
         scene=scene,
         tables=WorldArrays(
@@ -94,8 +98,9 @@ def build_world(scene: Scene) -> World:
         source_start=tuple(shown(scene, start) for start in starts),
         parts=tuple(part_facts(built) for built in parts),
         tags=tuple(fact for built in parts for fact in tag_facts(built)),
-        contacts=contacts,
+        contacts=_in_order(parts, (*contacts, *shared_room(parts, bodies, touch))),
         notices=tuple(notices),
+        touch=(float(min(touch, default=0.0)), float(max(touch, default=0.0))),
     )
 
 
@@ -116,6 +121,12 @@ def _built_parts(scene: Scene) -> tuple[list[BuiltPart], list[Notice]]:
         parts.append(BuiltPart(part, mesh, tags, first_tag))
         first_tag += len(tags.names)
     return parts, notices
+
+
+def _in_order(parts: Sequence[BuiltPart], contacts) -> tuple[ContactFacts, ...]:
+    """By the parts' order in the file; of one pair what touches comes first."""
+    row = {built.part.name: i for i, built in enumerate(parts)}
+    return tuple(sorted(contacts, key=lambda c: [row[name] for name in c.parts]))
 
 
 def _check_measures(scene: Scene, parts: Sequence[BuiltPart]) -> None:

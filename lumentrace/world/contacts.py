@@ -13,7 +13,7 @@ from lumentrace.world.world import ContactFacts
 # Further kinds, beside those of the engine's arrays.
 FLUSH = 2  # a face of an opaque part that lies within a transparent one, in a face of that
 NO_LIGHT = 3  # between parts without light inside
-_TAKEN = {
+TAKEN = {
     DRY: "dry",
     OPTICAL: "optical contact",
     FLUSH: "flush, the opaque face acts",
@@ -54,7 +54,7 @@ def contact_facts(parts: Sequence[BuiltPart], part_a, part_b, kind, area, gap):
     largest = np.zeros(len(rows))
     np.maximum.at(largest, of_row, gap)
     return tuple(
-        ContactFacts((parts[a].part.name, parts[b].part.name), float(t), float(g), _TAKEN[k])
+        ContactFacts((parts[a].part.name, parts[b].part.name), float(t), float(g), TAKEN[k])
         for (a, b, k), t, g in zip(rows.tolist(), total, largest, strict=True)
     )
 

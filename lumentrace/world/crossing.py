@@ -10,7 +10,7 @@ import numpy as np
 from lumentrace.world.boxes import box_pairs
 from lumentrace.world.geometry import face_boxes, triangle_distance
 from lumentrace.world.inside import is_near, winding
-from lumentrace.world.topology import edges_of, shell_boxes, shell_faces
+from lumentrace.world.topology import edges_of, shell_boxes, shell_faces, unbalanced
 
 _AT_ONCE = 256  # points asked at once, so that a plain crossing is found without asking them all
 
@@ -49,14 +49,44 @@ def surfaces_cross(vertex_a, corner_a, vertex_b, corner_b, distance):
         ((vertex_a, corner_a), (vertex_b, corner_b)),
         ((vertex_b, corner_b), (vertex_a, corner_a)),
     ):
-        for shell in _shells_near(*one, *other, distance):
-            probes = _probes(one[0], shell, *other, distance)
-            point = _first_inside(probes, *other, distance)
-            if point is not None:
-                ends = one[0][np.unique(shell)]
-                if _any_outside(np.concatenate([ends, probes]), *other, distance):
-                    return point
+        point = surface_enters(*one, *other, distance)
+        if point is not None:
+            return point
     return None
+
+
+def surface_enters(vertex_a, corner_a, vertex_b, corner_b, distance):
+    """A point where an edge of surface a, open or closed, enters closed surface b, or None.
+
+    Connected faces of a have points inside b and points outside, both farther from it than
+    `distance`. Faces that do not meet the box of b are left out: those that enter b do.
+    """
+    corner_a = _in_box(vertex_a, corner_a, vertex_b, corner_b, distance)
+    for shell in _shells_near(vertex_a, corner_a, vertex_b, corner_b, distance):
+        probes = _probes(vertex_a, shell, vertex_b, corner_b, distance)
+        point = _first_inside(probes, vertex_b, corner_b, distance)
+        if point is not None:
+            ends = vertex_a[np.unique(shell)]
+            if _any_outside(np.concatenate([ends, probes]), vertex_b, corner_b, distance):
+                return point
+    return None
+
+
+def open_pierced(vertex_a, corner_a, vertex_b, corner_b, distance) -> bool:
+    """Whether an edge of surface a passes through open surface b: with ends on either side of a
+    face, farther than `distance` from it, and as far from the rim of b."""
+    corner_a = _in_box(vertex_a, corner_a, vertex_b, corner_b, distance)
+    ends = edges_of(corner_a).ends
+    start, end = vertex_a[ends[:, 0]], vertex_a[ends[:, 1]]
+    lower, upper = face_boxes(vertex_b, corner_b)
+    edge, face = box_pairs(np.minimum(start, end), np.maximum(start, end), lower, upper)
+    row, share = pierced(start[edge], end[edge], vertex_b[corner_b[face]], distance)
+    inner = (share > 0) & (share < 1)
+    edge, share = edge[row[inner]], share[inner]
+    point = start[edge] + share[:, None] * (end[edge] - start[edge])
+    edges = edges_of(corner_b)
+    rim = edges.ends[unbalanced(edges)][:, [0, 1, 1]]  # as triangles without area
+    return not is_near(point, vertex_b, rim, distance).all()
 
 
 def _shells_near(vertex_a, corner_a, vertex_b, corner_b, distance):

@@ -5,7 +5,7 @@ from collections.abc import Sequence
 import numpy as np
 
 from lumentrace.errors import Notice
-from lumentrace.scene.model import Detector, Scene
+from lumentrace.scene.model import Detector, Scene, Source
 from lumentrace.world.arrays import TRANSPARENT, Mesh
 from lumentrace.world.bodies import Body, BuiltPart
 from lumentrace.world.boxes import box_pairs
@@ -13,24 +13,24 @@ from lumentrace.world.crossing import pierced
 from lumentrace.world.frames import corners
 from lumentrace.world.geometry import face_boxes
 from lumentrace.world.materials import AIR, tag_finish
+from lumentrace.world.sources import source_key
 from lumentrace.world.start_media import StartMedium, shown
-from lumentrace.world.words import counted, shown_point
+from lumentrace.world.words import counted, notice, shown_point
 
 _IN_A_ROW = 3  # transparent bodies, one behind the other, from which a stack is suspected
 _FLAT = 1.5  # times its smallest extent: no more than that is how deep a plate is along a stack
 
 
-def _doubtful(text: str) -> Notice:
-    return Notice("doubtful", text)
-
-
-def start_doubts(scene: Scene, name: str, media: Sequence[StartMedium]) -> list[Notice]:
+def start_doubts(scene: Scene, source: Source, media: Sequence[StartMedium]) -> list[Notice]:
     """A source that starts in something else than air, and light that cannot leave."""
     if all(start.medium == AIR for start in media):
         return []
     notices = [
-        _doubtful(
-            f"source {name} starts in {shown(scene, media)}: flux and pattern are those in there"
+        notice(
+            "doubtful",
+            source.place,
+            source_key(source),
+            f"starts in {shown(scene, media)}: flux and pattern are those in there",
         )
     ]
     around = scene.media[scene.study.surroundings].index
@@ -38,9 +38,12 @@ def start_doubts(scene: Scene, name: str, media: Sequence[StartMedium]) -> list[
         medium = scene.media[start.medium]
         if start.part is not None and medium.absorption == 0 and medium.index > around:
             notices.append(
-                _doubtful(
-                    f"source {name} shines inside {start.part}, which absorbs nothing "
-                    f"({start.medium}): total reflection may trap light there until events_max"
+                notice(
+                    "doubtful",
+                    source.place,
+                    source_key(source),
+                    f"shines inside {start.part}, which absorbs nothing ({start.medium}): total "
+                    "reflection may trap light there until events_max",
                 )
             )
     return notices
@@ -56,20 +59,28 @@ def stack_doubts(scene: Scene, parts: Sequence[BuiltPart], bodies: Sequence[Body
     lower = np.array([body.lower for body in clear]).reshape(-1, 3)
     upper = np.array([body.upper for body in clear]).reshape(-1, 3)
     extent = upper - lower
-    most = 0
+    longest: list[int] = []
     for axis in range(3):
         flat = extent[:, axis] <= _FLAT * extent.min(axis=1)
         low, high = lower[flat], upper[flat]
         low[:, axis] = high[:, axis] = 0.0
         middle = 0.5 * (low + high)
-        row, _ = box_pairs(middle, middle, low, high)
-        most = max(most, int(np.bincount(row, minlength=1).max()))
-    if most < _IN_A_ROW:
+        row, met = box_pairs(middle, middle, low, high)
+        stack = met[row == np.bincount(row, minlength=1).argmax()]
+        if len(stack) > len(longest):
+            stack = np.flatnonzero(flat)[stack]
+            longest = stack[np.argsort(lower[stack, axis], kind="stable")].tolist()
+    if len(longest) < _IN_A_ROW:
         return []
+    first, last = clear[longest[0]], clear[longest[-1]]
     return [
-        _doubtful(
-            f"{most} transparent bodies stand in a row: light is taken as unpolarised at each "
-            "surface, which is approximate where it passes several at a slant"
+        notice(
+            "doubtful",
+            parts[first.part].part.place,
+            "medium",
+            f"{len(longest)} transparent bodies stand in a row, from {first.name} to {last.name}: "
+            "light is taken as unpolarised at each surface, which is approximate where it passes "
+            "several at a slant",
         )
     ]
 
@@ -104,9 +115,12 @@ def detector_doubts(
     name = bodies[mesh.body[faces[row[first]]]].name
     near = shown_point(np.concatenate([points for _, points in found])[first])
     return [
-        _doubtful(
-            f"detector {detector.name} passes through {name} near {near}: some of its cells lie "
-            "inside that part or behind it"
+        notice(
+            "doubtful",
+            detector.place,
+            "plane",
+            f"passes through {name} near {near}: some of its cells lie inside that part or behind "
+            "it",
         )
     ]
 
@@ -140,8 +154,11 @@ def rounding_doubts(parts: Sequence[BuiltPart], bodies: Sequence[Body], altitude
         lost = altitude[body.first_face : body.first_face + len(body.corner)] == 0
         lost &= built.mesh.facets.altitude > 0
         if lost.any() and body.part not in notices:
-            notices[body.part] = _doubtful(
-                f"part {body.name} stands so far from the origin that rounding there swallows "
-                f"{counted(lost.sum(), 'face')}: never hit"
+            notices[body.part] = notice(
+                "doubtful",
+                built.part.place,
+                "at",
+                f"{body.name} stands so far from the origin that rounding there swallows "
+                f"{counted(lost.sum(), 'face')}: never hit",
             )
     return list(notices.values())

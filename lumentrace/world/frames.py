@@ -63,7 +63,12 @@ def spread(source: Source, place, size):
     """(n, 3) points of a point, a disc or a rectangle: its middle, and eight near its rim."""
     if isinstance(source.shape, Point):
         return place[:1]
+    disc = isinstance(source.shape, Disc)
+    return spread_plane(place, np.array([size[0], size[0]]) if disc else size)
+
+
+def spread_plane(place, half):
+    """(9, 3) points of the ellipse in a rectangle: its middle, and eight near its rim."""
     around = np.radians(np.arange(0, 360, 45))
     ring = np.stack([np.cos(around), np.sin(around)], axis=1)
-    half = np.array([size[0], size[0]]) if isinstance(source.shape, Disc) else size
     return place[0] + np.concatenate([np.zeros((1, 2)), 0.9 * ring * half]) @ place[2:]

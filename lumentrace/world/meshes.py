@@ -46,6 +46,8 @@ class PartMesh:
 def read_file(part: Part) -> MeshFile:
     """Reads the mesh file of a part. Raises UserError where it cannot be read."""
     path = part.mesh
+    if path.is_dir():
+        raise mesh_fault(part, f"is a folder; allowed: a file that ends in {', '.join(READERS)}")
     reader = READERS.get(path.suffix.lower())
     if reader is None:
         raise mesh_fault(part, f'ends in "{path.suffix}"; allowed: {", ".join(READERS)}')

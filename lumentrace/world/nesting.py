@@ -60,14 +60,14 @@ def _nested(parts, bodies, touch, clear, priority):
                 f'"{a.name}" and "{b.name}" cross near {shown_point(point)} and both have priority '
                 f"{priority[i]}; the larger priority fills what they share",
             )
-        if _wholly_inside(a, b, distance):
+        if wholly_inside(a, b, distance):
             yield i, j
-        elif _wholly_inside(b, a, distance):
+        elif wholly_inside(b, a, distance):
             yield j, i
 
 
-def _wholly_inside(a: Body, b: Body, distance) -> bool:
-    """Whether every shell of a lies within b, which a does not cross."""
+def wholly_inside(a: Body, b: Body, distance) -> bool:
+    """Whether every shell of a lies within b, which is closed and which a does not cross."""
     return all(
         is_inside(a.vertex, a.corner[faces], b.vertex, b.corner, distance)
         for faces in shell_faces(a.corner)

@@ -58,6 +58,11 @@ def emitting_faces(source: Source, parts: Sequence[BuiltPart], bodies: Sequence[
     return faces
 
 
+def source_key(source: Source) -> str:
+    """The key of the scene file under which a source's shape stands."""
+    return _STARTS[type(source.shape)]
+
+
 def watts(source: Source, parts: Sequence[BuiltPart], metre: float) -> float:
     """Radiant flux of a source in W, over all copies. metre: of one unit of length."""
     flux, shape = source.flux, source.shape

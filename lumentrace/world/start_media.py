@@ -14,7 +14,7 @@ from lumentrace.world.inside import winding
 from lumentrace.world.materials import AIR
 from lumentrace.world.sources import Lit
 
-_BEFORE = 4.0  # distances of touch before a surface at which its medium is looked up
+BEFORE = 4.0  # distances of touch before a surface at which its medium is looked up
 _FACES_ASKED = 16  # emitting faces of one source that are looked at
 
 
@@ -36,9 +36,7 @@ def start_media(
     the surroundings.
     """
     if not isinstance(lit.source.shape, Faces):
-        points = spread(lit.source, lit.place, lit.size)
-        if not isinstance(lit.source.shape, Point):
-            points = points + _BEFORE * touch.max(initial=0.0) * lit.place[1]
+        points = start_points(lit, touch)
         return tuple(dict.fromkeys(_holding(points, parts, bodies, rank, around)))
     asked = lit.faces[np.unique(np.linspace(0, len(lit.faces) - 1, _FACES_ASKED).astype(int))]
     found = []
@@ -49,9 +47,17 @@ def start_media(
             part = parts[bodies[mesh.body[across]].part].part
             found.append(StartMedium(AIR, None, part.name))
             continue
-        before = point + _BEFORE * touch[mesh.body[face]] * mesh.normal[face]
+        before = point + BEFORE * touch[mesh.body[face]] * mesh.normal[face]
         found.extend(_holding(before[None], parts, bodies, rank, around))
     return tuple(dict.fromkeys(found))
+
+
+def start_points(lit: Lit, touch):
+    """(n, 3) points just before a point, a disc or a rectangle, where its rays start."""
+    points = spread(lit.source, lit.place, lit.size)
+    if isinstance(lit.source.shape, Point):
+        return points
+    return points + BEFORE * touch.max(initial=0.0) * lit.place[1]
 
 
 def _across_gap(point, face, mesh: Mesh, touch):

@@ -14,7 +14,7 @@ from lumentrace.world.topology import (
     to_reverse,
     unbalanced,
 )
-from lumentrace.world.words import counted, shown_point
+from lumentrace.world.words import counted, notice, shown_point
 
 
 def mesh_fault(part: Part, text: str) -> UserError:
@@ -24,7 +24,7 @@ def mesh_fault(part: Part, text: str) -> UserError:
 
 def mesh_told(part: Part, text: str) -> Notice:
     """The remark about a part's mesh file."""
-    return Notice("told", f"part {part.name}: {part.mesh.name} {text}")
+    return notice("told", part.place, "mesh", f'"{part.mesh.name}" {text}')
 
 
 def wound(part: Part, vertex, corner, notices: list[Notice]):
@@ -71,9 +71,11 @@ def wound(part: Part, vertex, corner, notices: list[Notice]):
 
 
 def _no_one_front(part, turn):
-    return Notice(
+    return notice(
         "doubtful",
-        f"part {part.name}: neighbouring faces of {part.mesh.name} disagree on the front "
+        part.place,
+        "mesh",
+        f'neighbouring faces of "{part.mesh.name}" disagree on the front '
         f"({turn.sum()} of {len(turn)} face the other way)",
     )
 

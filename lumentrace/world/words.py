@@ -1,6 +1,11 @@
-"""How messages write numbers of things, and points."""
+"""How messages write places, numbers of things, and points."""
+
+from typing import Literal
 
 import numpy as np
+
+from lumentrace.errors import Notice
+from lumentrace.scene.place import Place
 
 
 def counted(n: int, one: str, many: str | None = None) -> str:
@@ -11,3 +16,8 @@ def counted(n: int, one: str, many: str | None = None) -> str:
 def shown_point(point) -> str:
     """A point, (3,): ``(1.5, 0, -2)``."""
     return "(" + ", ".join(f"{x:.6g}" for x in np.asarray(point) + 0.0) + ")"
+
+
+def notice(kind: Literal["told", "doubtful"], place: Place, key: str, text: str) -> Notice:
+    """A remark on a table of the scene file: ``tray.toml:15: part.tray.mesh: text``."""
+    return Notice(kind, f"{place.at(key)}: {place.name}.{key}: {text}")

@@ -39,12 +39,12 @@ class TagFacts:
 
 @dataclass(frozen=True)
 class ContactFacts:
-    """Two parts that touch: everything that was found, over all copies."""
+    """Two parts that touch or share room: everything that was found, over all copies."""
 
-    parts: tuple[str, str]
-    area: float
-    gap: float  # the largest, in the study's unit
-    taken: str  # "dry" or "optical contact"
+    parts: tuple[str, str]  # in the order of the file
+    area: float | None  # on which they touch; None: they share room
+    gap: float | None  # the largest, in the study's unit
+    taken: str  # of a touch one of `contacts.TAKEN`; else as `shared.shared_room` says
 
 
 @dataclass(frozen=True)
@@ -63,6 +63,7 @@ class World:
     tags: tuple[TagFacts, ...]
     contacts: tuple[ContactFacts, ...]
     notices: tuple[Notice, ...]
+    touch: tuple[float, float] = (0.0, 0.0)  # smallest and largest tolerance of touching
 
     @cached_property
     def arrays(self) -> WorldArrays:

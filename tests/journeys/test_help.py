@@ -66,6 +66,28 @@ def _heavy(statement: str) -> str:
             ["trace", "a.toml", "--threads", "0"],
             "lumentrace trace: --threads: 0 is out of range; allowed: 1 to 1024",
         ),
+        (
+            ["check", "a.toml", "--rays", "5"],
+            'lumentrace check: --rays: no such option; allowed: "--help", "--json", "-h"\n',
+        ),
+        (
+            ["trace", "a.toml", "--rays"],
+            "lumentrace trace: --rays: its value is missing; allowed: 1 to 1000000000000000\n",
+        ),
+        (
+            ["ledger", "a.toml", "--detector"],
+            "lumentrace ledger: --detector: its value is missing; allowed: NAME\n",
+        ),
+        (["check", "a.toml", "--json=3"], "lumentrace check: --json: takes no value\n"),
+        (
+            ["check", "a.toml", "b.toml", "c"],
+            "lumentrace check: too many words: b.toml c; allowed: SCENE and options\n",
+        ),
+        (["schema", "a"], "lumentrace schema: too many words: a; allowed: options only\n"),
+        (
+            ["draw", "a.toml", "--top", "11"],
+            "lumentrace draw: --top: 11 is out of range; allowed: 1 to 10\n",
+        ),
         (["check", "none.toml"], "none.toml: "),
         (["ledger", "none.nc"], "none.nc: "),
     ],

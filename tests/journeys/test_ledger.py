@@ -42,7 +42,7 @@ def test_ledger_for_machines_is_sorted_and_its_shares_add_up(traced):
     found = answer("ledger", traced.name, cwd=traced.parent)["paths"]
     assert found[0].keys() == {
         "detector", "source", "path", "flux", "error", "unit", "share", "share_error", "upper",
-        "count", "effective",
+        "count", "effective", "reflections", "scatters", "length", "arrival_ns",
     }  # fmt: skip
     assert found[0]["path"] == [["window:above", "through"], ["window:below", "through"]]
     kept = [row["flux"] for row in found if row["path"] is not None]
@@ -94,6 +94,8 @@ def test_the_newest_run_is_taken_or_the_one_that_is_named(traced):
     ok("trace", traced.name, "--seed", "9", cwd=traced.parent)
     assert "seed 9." in ok("ledger", traced.name, cwd=traced.parent)
     assert "seed 3." in ok("ledger", old, cwd=traced.parent)
+    drawn = ok("draw", traced.name, "--top", "1", cwd=traced.parent)
+    assert "seed 9." in drawn.splitlines()[0]
 
 
 def test_a_reader_that_has_enough_is_no_fault(traced):

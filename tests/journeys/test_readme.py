@@ -4,7 +4,9 @@ import re
 import subprocess
 import sys
 
-from tests.journeys.command import PLATE, ROOT, answer
+import pytest
+
+from tests.journeys.command import ROOT, answer
 
 README = (ROOT / "README.md").read_text(encoding="utf-8")
 
@@ -25,13 +27,16 @@ def test_the_two_lines_stand_alone_and_ci_runs_the_second():
     assert suite in (ROOT / ".ci" / "run").read_text(encoding="utf-8").splitlines()
 
 
+@pytest.mark.skipif(sys.platform == "win32", reason="needs a shell")
 def test_the_scene_of_the_readme_is_complete(tmp_path):
-    (tmp_path / "plate.obj").write_text(PLATE, encoding="ascii")
-    (scene,) = _blocks("toml")
-    (tmp_path / "window.toml").write_text(scene.replace("plate.stl", "plate.obj"), encoding="utf-8")
+    (mesh,), (scene,) = _blocks("shell"), _blocks("toml")
+    subprocess.run(["sh", "-c", mesh], cwd=tmp_path, check=True)
+    (tmp_path / "window.toml").write_text(scene, encoding="utf-8")
     found = answer("check", "window.toml", cwd=tmp_path)
     assert found["limits"][0]["measure"] == "task.mean"
     assert found["notices"] == []
+    assert found["parts"]["desk"]["size"] == [500.0, 400.0, 4.0]
+    assert all(part["closed"] and part["volume"] > 0.0 for part in found["parts"].values())
 
 
 def test_the_python_of_the_readme_runs():

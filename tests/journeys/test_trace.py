@@ -27,9 +27,10 @@ def test_trace_prints_measures_account_and_what_to_type_next(tmp_path):
     text = ok("trace", scene.name, cwd=tmp_path)
     assert_narrow(text)
     (run,) = runs_of(scene)
-    assert re.fullmatch(r"plate-[0-9a-f]{4}\.nc", run.name)
+    assert re.fullmatch(r"plate-[0-9a-f]{8}\.nc", run.name)
     assert re.search(r"^65 536 rays in \S+ s, seed 3\.$", text, re.M)
-    assert re.search(r"^desk\.mean +\d[\d.]* +[\d.]+ +lx +at least 100 +[\d.]+ inside$", text, re.M)
+    mean = r"^desk\.mean +\d[\d.]* +[\d.]+ +lx\n  at least +100 +[\d.]+ inside$"
+    assert re.search(mean, text, re.M)
     assert re.search(r"^desk\.min .*\n  by halves +\d", text, re.M)
     assert "\n100 lm (0.1464 W) went to" in text
     assert re.search(r"^floor:above +[\d.]+ +[\d.]+ +[\d.]+$", text, re.M)
@@ -40,6 +41,34 @@ def test_trace_prints_measures_account_and_what_to_type_next(tmp_path):
         f"Paths:    lumentrace ledger runs/{run.name}\n"
         f"Pictures: lumentrace draw runs/{run.name}\n"
     )
+
+
+def test_trace_stays_narrow_and_honest_where_light_is_lost(tmp_path):
+    """Cut off after four events, with names and two-sided limits as wide as they come."""
+    scene = small_scene(tmp_path)
+    limits = "".join(
+        f'[[limit]]\nmeasure = "floor_of_the_desk.{kind}"\nat_least = {low}\nat_most = {high}\n'
+        for kind, low, high in (
+            ("mean", 123.456, 123456.7), ("uniformity", 0.123456, 0.987654),
+            ("uniformity_split", 0.0000123, 0.912345), ("flux", 1e-6, 9),
+        )
+    )  # fmt: skip
+    text = SCENE.replace("desk", "floor_of_the_desk").replace(
+        "= 65_536", "= 65_536\nevents_max = 4"
+    )
+    text = text.replace("diffuse = 0.5", "diffuse = 0.3\nmirror = 0.7")
+    scene.write_text(text[: text.index("[[limit]]")] + limits, encoding="utf-8")
+    shown = ok("trace", scene.name, cwd=tmp_path)
+    assert_narrow(shown)
+    assert re.search(r"^measure .* unseen  errors away$", shown, re.M)
+    for name in ("mean", "uniformity", "flux"):
+        assert re.search(rf"^floor_of_the_desk\.{name} .*\n  at least .*\n  at most ", shown, re.M)
+    assert "open: unseen\n" in shown
+    assert re.search(r"^\d+( \d{3})* rays could not be followed to the end", shown, re.M)
+    assert "Nothing absorbed: " not in shown or "window:" not in shown
+    (run,) = runs_of(scene)
+    told = "Light cut off or unresolved could add up to "
+    assert told in ok("ledger", scene.name, cwd=tmp_path)
 
 
 def test_trace_for_machines(tmp_path):

@@ -66,6 +66,17 @@ def test_what_was_not_met_has_no_error_and_what_is_not_sampled_has_none_to_speak
     assert (found.emitted.value, found.emitted.error) == (3.0, 0.0)
 
 
+def test_flows_count_their_contributions():
+    """Two sources of equally many rays, weights 2 : 1, of which a share p arrives: of n rays
+    (sum w)^2 / sum w^2 = p n (1.5^2 / 2.5); within 4 standard errors of a count of p n rays."""
+    found = account(run(rounds=2))
+    n, p = 2 * 65_536, CHANCE[LOST_WAY]
+    counted = p * n * 1.5**2 / 2.5
+    assert found.cut_off.effective == pytest.approx(counted, abs=4 * (p * n) ** 0.5)
+    assert found.unresolved.effective == 0.0
+    assert found.emitted.effective is None and found.sampling.effective is None
+
+
 def test_sampling_is_signed():
     found = account(run(chance=only(ROULETTE)))
     assert found.sampling.error > 0.0

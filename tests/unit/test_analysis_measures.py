@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from lumentrace.analysis.cells import cells_of
-from lumentrace.analysis.measures import measures
+from lumentrace.analysis.measures import CELL_NOT_HIT, NOT_HIT, measures
 from lumentrace.photometry import luminosity
 from lumentrace.run.make import make_run
 from lumentrace.scene.measures import OF_DETECTOR
@@ -251,3 +251,14 @@ def test_the_error_of_a_uniformity_knows_that_cell_and_mean_vary_together():
     assert apart["desk.min"].error == pytest.approx(m["desk.min"].error, rel=1e-9)
     expected = 2 * relative * 12 / 18
     assert apart["desk.uniformity"].error == pytest.approx(expected, rel=1e-9)
+
+
+def test_a_cell_without_a_hit_is_told_from_a_detector_without_one():
+    chance = np.zeros(len(CHANCE))
+    chance[DIRECT], chance[AWAY] = 1e-4, 1.0 - 1e-4  # some 6 rays to the desk's 12 cells
+    found = measures(run(chance=chance))
+    assert found["desk.mean"].error > 0.0 and found["desk.max"].error > 0.0
+    for name in ("desk.min", "desk.uniformity"):
+        assert found[name].error is None and found[name].note.split("; ")[0] == CELL_NOT_HIT
+    for name in ("rx.flux", "rx.min", "rx.uniformity"):
+        assert found[name].error is None and found[name].note.split("; ")[0] == NOT_HIT

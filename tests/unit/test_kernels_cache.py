@@ -71,17 +71,17 @@ def test_compiled_code_depends_on_nothing_that_the_digest_does_not_see():
 
 
 ASK = """
-from lumentrace.jit import cache_folder, is_warm
-warm = is_warm()
-from lumentrace.models.patterns.isotropic import emit
 import numpy
-print(warm, cache_folder() and cache_folder().name, emit(numpy.zeros(2), 0.25, 0.5)[2])
+from lumentrace.jit import cache_folder
+from lumentrace.models.patterns.isotropic import emit
+answer = emit(numpy.zeros(2), 0.25, 0.5)[2]
+print(bool(emit.stats.cache_hits), cache_folder() and cache_folder().name, answer)
 """
 
 
 @pytest.fixture
 def ask(tmp_path):
-    """(warm, folder, answer) of a copy of the compiled sources, in a process of its own."""
+    """(from the cache, folder, answer) of a copy of the compiled sources, in a process of its own."""
     for place in ("__init__.py", "errors.py", *COMPILED):
         source, target = PACKAGE / place, tmp_path / "lumentrace" / place
         target.parent.mkdir(parents=True, exist_ok=True)
@@ -101,8 +101,8 @@ def ask(tmp_path):
             timeout=300,
         )
         assert done.returncode == 0, done.stderr
-        warm, folder, answer = done.stdout.split()
-        return warm == "True", folder, float(answer)
+        cached, folder, answer = done.stdout.split()
+        return cached == "True", folder, float(answer)
 
     return run
 

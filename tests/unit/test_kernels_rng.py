@@ -17,7 +17,7 @@ def test_range_is_half_open():
 
 
 def test_purposes_are_different():
-    purposes = (rng.PLACE, rng.DIRECTION, rng.SEGMENT, rng.SURFACE, rng.LOBE)
+    purposes = (rng.PLACE, rng.DIRECTION, rng.SURFACE, rng.LOBE)
     assert len(set(purposes)) == len(purposes)
 
 

@@ -72,6 +72,14 @@ def test_a_missing_file_is_refused_with_the_nearest_name(study):
     assert '"cower.stl" does not exist; did you mean "cover.stl"?' in refused(study)
 
 
+def test_a_folder_for_a_mesh_is_called_a_folder(study):
+    study.part("tray", CUBE, medium="opaque", finish="white")
+    study.lists["part"][0]["mesh"] = "."
+    text = refused(study)
+    assert "part.tray.mesh: " in text
+    assert f'"{study.folder.name}" is a folder; allowed: a file that ends in .stl, .obj' in text
+
+
 @pytest.mark.parametrize(
     ("mesh", "message"),
     [
@@ -119,19 +127,27 @@ def test_an_open_opaque_part_is_used_and_told(study):
     assert not world.parts[0].closed and world.parts[0].volume is None
 
 
+def said(study, text: str) -> str:
+    """A remark on the mesh of the part cover, with its place."""
+    line = study.text().splitlines().index('mesh = "cover.obj"') + 1
+    return f"study.toml:{line}: part.cover.mesh: {text}"
+
+
 @pytest.mark.parametrize("medium", ["clear", "opaque"])
 def test_inside_out_is_turned_and_told(study, medium):
     finish = {"finish": "white"} if medium == "opaque" else {}
     study.part("cover", CUBE.inward(), medium=medium, **finish)
     world = built(study)
-    assert told(world) == ["part cover: cover.obj is inside out: turned"]
+    assert told(world) == [said(study, '"cover.obj" is inside out: turned')]
     assert world.parts[0].volume == pytest.approx(8.0)
 
 
 def test_faces_wound_against_their_neighbours_are_turned_and_told(study):
     study.part("cover", turned(CUBE, 3, 7), medium="clear")
     world = built(study)
-    assert told(world) == ["part cover: cover.obj has 2 faces wound against the neighbours: turned"]
+    assert told(world) == [
+        said(study, '"cover.obj" has 2 faces wound against the neighbours: turned')
+    ]
     assert world.parts[0].volume == pytest.approx(8.0)
 
 
@@ -164,7 +180,7 @@ def test_repeated_vertices_are_welded_and_told(study):
     mesh.vertex[mesh.vertex == 0] = -0.0
     study.part("cover", mesh, medium="clear")
     world = built(study)
-    assert told(world) == ["part cover: cover.obj repeats 28 vertices: welded"]
+    assert told(world) == [said(study, '"cover.obj" repeats 28 vertices: welded')]
     assert len(world.arrays.mesh.vertex) == 8
 
 

@@ -4,8 +4,10 @@ import numpy as np
 import pytest
 
 from lumentrace.analysis.ledger import PathRow
+from lumentrace.analysis.measures import Measure
 from lumentrace.errors import UserError
 from lumentrace_viz.legend import _lines
+from lumentrace_viz.map_picture import _number
 from lumentrace_viz.marks import spread
 from lumentrace_viz.page import Page, fitting
 from lumentrace_viz.ways import Drawn
@@ -37,9 +39,24 @@ def test_a_long_path_breaks_between_steps_only():
 
 
 def test_a_page_is_written_whole_or_not_at_all(tmp_path):
-    page = Page(300, "Title with $ and _", "subtitle")
+    page = Page(300, "Title with $ and _ and 灯", "subtitle")
     file = page.save(tmp_path / "a.png")
     assert file.read_bytes()[:8] == b"\x89PNG\r\n\x1a\n"
     assert [p.name for p in tmp_path.iterdir()] == ["a.png"]
     with pytest.raises(UserError, match="cannot be written"):
         page.save(tmp_path / "missing" / "b.png")
+
+
+@pytest.mark.parametrize(
+    "name, value, error, unit, upper, text",
+    [
+        ("desk.mean", 12.3, 0.4, "lx", None, "12.3 ± 0.4 lx"),
+        ("desk.min", 0.0, None, "lx", 2.5, "not hit, below 2.5 lx"),
+        ("desk.uniformity", 0.0, None, "1", 0.125, "darkest cell not hit, below 0.125"),
+        ("desk.uniformity", 0.0, None, "1", None, "darkest cell not hit"),
+        ("desk.uniformity", None, None, "1", None, "not hit"),
+    ],
+)
+def test_a_caption_tells_a_dark_cell_from_a_dark_detector(name, value, error, unit, upper, text):
+    measure = Measure(name, value, error, unit, upper, unseen=0.0, effective=0.0, note="")
+    assert _number(measure) == text

@@ -9,7 +9,8 @@ from tests.unit.world_study import add_file, binary_stl, built, new_study, told
 from tests.worlds import BOX_SIDES, Mesh, box, cylinder, joined, rectangle, sphere
 
 REAL = (
-    "vertex", "normal", "error", "margin", "pair_gap", "widest_gap", "lower", "upper", "lobe_share", "values",
+    "vertex", "normal", "error", "margin", "pair_gap", "widest_gap", "lower", "upper", "lobe_share",
+    "values",
     "place", "size", "pattern_values", "wavelength", "ray_flux", "face_area",
 )  # fmt: skip
 CUBE = box((0, 0, 0), (1, 1, 1))
@@ -178,8 +179,9 @@ def test_a_detector_that_passes_through_a_part_is_doubted(study):
     study.detector("on", [0.5, 0.5, 1], [0, 0, 1], [9, 9])
     study.detector("beside", [5, 0.5, 0.5], [0, 0, 1], [8, 8])
     study.detector("within", [0.5, 0.5, 0.5], [0, 0, 1], [0.5, 0.5])
-    (doubt,) = told(built(study), "doubtful")
-    assert doubt.startswith("detector through passes through tray near (")
+    doubt, within = told(built(study), "doubtful")
+    assert ": detector.through.plane: passes through tray near (" in doubt
+    assert ": detector.within.plane: lies inside tray" in within
 
 
 def test_a_detector_that_fills_a_box_or_meets_a_large_face(study):
@@ -189,7 +191,7 @@ def test_a_detector_that_fills_a_box_or_meets_a_large_face(study):
     assert told(built(study), "doubtful") == []
     study.detector("pokes", [1, 0.1, 0.2], [0, 0, 1], [0.2, 0.2])
     (doubt,) = told(built(study), "doubtful")
-    assert doubt.startswith("detector pokes passes through room near (")
+    assert ": detector.pokes.plane: passes through room near (" in doubt
 
 
 def test_a_stack_of_plates_is_doubted_and_a_row_of_lenses_is_not(study):
@@ -200,7 +202,8 @@ def test_a_stack_of_plates_is_doubted_and_a_row_of_lenses_is_not(study):
                turn={"axis": [1, 0, 0], "degrees": 30},
                repeat={"count": [1, 1, 3], "step": [0, 0, 20]})  # fmt: skip
     (doubt,) = told(built(study), "doubtful")
-    assert doubt.startswith("3 transparent bodies stand in a row: light is taken as unpolarised")
+    row = "3 transparent bodies stand in a row, from stack (1) to stack (3): light is taken as"
+    assert ": part.stack.medium: " in doubt and row in doubt
 
 
 def test_a_copy_too_far_away_for_its_faces_is_doubted(study):

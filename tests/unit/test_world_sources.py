@@ -166,7 +166,9 @@ def test_rays_start_in_the_body_that_acts_at_the_point(study):
     text, world = start_of(study, point=[0.2, 0.1, 0])
     assert text == "index 1.4 (oil of core)" and world.arrays.sources.immersed.tolist() == [True]
     (doubt,) = told(world, "doubtful")
-    assert doubt.startswith("source here starts in index 1.4 (oil of core)")
+    line = study.text().splitlines().index("point = [0.2, 0.1, 0]") + 1
+    start = f"study.toml:{line}: source.here.point: starts in index 1.4 (oil of core)"
+    assert doubt.startswith(start)
 
 
 def test_a_die_in_a_lens_starts_in_the_lens_and_light_may_be_trapped(study):

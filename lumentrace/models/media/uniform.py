@@ -1,6 +1,6 @@
 """A medium of one index that absorbs by the law of Beer and Lambert.
 
-W. H. Beer and J. H. Lambert; Born and Wolf, Principles of Optics, section 14.1.
+A. Beer (1852) and J. H. Lambert (1760); Born and Wolf, Principles of Optics, section 14.1.
 """
 
 from math import exp
