@@ -1,14 +1,13 @@
 """The darkest and the brightest cell of a detector, plain or chosen and valued by halves."""
 
 from dataclasses import dataclass
-from math import sqrt
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from lumentrace.analysis.samples import Largest, largest_in_cell
 from lumentrace.analysis.statistics import jackknife, odd
-from lumentrace.run.estimate import standard_error
+from lumentrace.run.estimate import block_error, grouped_error, standard_error
 from lumentrace.run.run import Run
 
 if TYPE_CHECKING:
@@ -43,11 +42,18 @@ class Cells:
 
     def error(self, cell: int) -> float:
         """Standard error of a cell: of its batches, of which the odd ones are half; where they
-        were not kept of its blocks."""
+        were not kept of its blocks, or of those of the odd batches."""
         batch = self._batch(cell)
         if batch is not None:
             return float(standard_error(batch))
-        return float(self.node["error"].values.flat[cell]) * (sqrt(2.0) if self.split else 1.0)
+        if not self.split:
+            return float(self.node["error"].values.flat[cell])
+        up, across = np.unravel_index(cell, self.node["value"].shape)
+        mean, square = (
+            self.node[v].values[1, :, up, across] for v in ("cell_half", "cell_block_square")
+        )
+        error = grouped_error(block_error(mean, square, self.blocks))
+        return float(error) / self.node.attrs["cell_area"]
 
     def ratio_error(self, cell: int) -> float:
         """Standard error of cell / mean at this cell, which vary together. Where batch values were

@@ -255,7 +255,7 @@ def merge_block(block, tally, group_of, tags_part, totals, ledger, scratch):
         for i in range(n):
             group, cell = group_of[arrivals[i].source], arrivals[i].cell
             total = totals.cell_block[group, cell]
-            totals.cell_block_square[group, cell] += total * total
+            totals.cell_block_square[batch & 1, group, cell] += total * total
             totals.cell_block[group, cell] = 0.0
     _merge_lost(tally, totals)
 

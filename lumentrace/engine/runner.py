@@ -67,7 +67,7 @@ class _Sums:
             cell_most=np.zeros(detectors, np.int64),
             cell_batch=np.zeros((groups, cells if kept else 0, BATCHES)),
             cell_half=np.zeros((2, groups, cells)),
-            cell_block_square=np.zeros((groups, 0 if kept else cells)),
+            cell_block_square=np.zeros((2, groups, 0 if kept else cells)),
             cell_square=np.zeros((groups, cells)),
             cell_block=np.zeros((groups, 0 if kept else cells)),
             what_if=np.zeros(_what_if_shape(world)),

@@ -114,7 +114,8 @@ class Sums:
     cell_most: np.ndarray  # (D,) int64 most arrivals of one ray in one cell
     cell_batch: np.ndarray | None  # (G, C, 64) float64, or None where map_memory is too small; then
     cell_half: np.ndarray  # (2, G, C) float64 sums over even and over odd batches (always there)
-    cell_block_square: np.ndarray | None  # (G, C) float64 sum over blocks of (block's sum)^2
+    cell_block_square: np.ndarray | None  # (2, G, C) float64 sums over the blocks of even and of
+    #   odd batches of (the block's sum)^2
     cell_square: np.ndarray  # (G, C) float64 sum over rays of (the ray's total in the cell)^2
     paths: PathSums
     what_if: np.ndarray  # (D, G, 64, K, REPEATS_MAX + 2) float64: sum of w for k = 1..15, then of

@@ -22,6 +22,12 @@ def block_error(mean: np.ndarray, mean_square: np.ndarray, blocks: int) -> np.nd
     return np.sqrt(np.maximum(mean_square - mean**2, 0.0) / (blocks - 1))
 
 
+def grouped_error(error: np.ndarray) -> np.ndarray:
+    """Standard error of a sum over groups, the first axis: they have rays of their own, so that
+    their variances add."""
+    return np.sqrt((error**2).sum(axis=0))
+
+
 def effective_number(value: np.ndarray, square: np.ndarray) -> np.ndarray:
     """(sum w)^2 / sum w^2, the number of equal contributions with the same relative spread
     (L. Kish, Survey Sampling, 1965, section 11.7; citation from memory); 0 where there is none.

@@ -11,7 +11,7 @@ from lumentrace import __version__
 from lumentrace.engine.sums import REASONS, Sums, account_rows, step_parts
 from lumentrace.models.events import EVENTS
 from lumentrace.photometry import EFFICACY, luminosity
-from lumentrace.run.estimate import block_error, effective_number, standard_error
+from lumentrace.run.estimate import block_error, effective_number, grouped_error, standard_error
 from lumentrace.run.run import Run
 from lumentrace.run.variables import (
     DETECTOR,
@@ -161,11 +161,9 @@ def _detector(world: World, sums: Sums, scale: Scale, d: int) -> xarray.Dataset:
         rows = np.moveaxis(values["cell_batch"], 1, 0)  # one by one, which spares memory
         error = np.stack([standard_error(row.sum(axis=0)) for row in rows])
     else:
-        values["cell_block_square"] = grid(sums.cell_block_square, 1, lambda s: s / scale.blocks)
-        mean = values["cell_half"].mean(axis=0)
-        # groups have rays of their own, so that their variances add
-        by_group = block_error(mean, values["cell_block_square"], scale.blocks)
-        error = np.sqrt((by_group**2).sum(axis=0))
+        values["cell_block_square"] = grid(sums.cell_block_square, 2, scale.half)
+        mean, square_mean = (values[f"cell_{v}"].mean(axis=0) for v in ("half", "block_square"))
+        error = grouped_error(block_error(mean, square_mean, scale.blocks))
     values["value"] = flux / facts["cell_area"]
     values["error"] = np.where(square > 0.0, error / facts["cell_area"], np.nan)
     values["effective"] = effective_number(flux, square)

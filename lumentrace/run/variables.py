@@ -69,8 +69,9 @@ VARIABLES = (
              "sum over rays of (the ray's total in the cell / blocks)^2"),
     Variable(DETECTOR, "cell_batch", ("group", "up", "across", "batch"), "float64", "{flux}",
              "flux on the cell; kept where it fits map_memory", optional=True),
-    Variable(DETECTOR, "cell_block_square", ("group", "up", "across"), "float64", "{flux}2",
-             "mean over blocks of (the block's estimate)^2; kept where cell_batch is not",
+    Variable(DETECTOR, "cell_block_square", ("half", "group", "up", "across"), "float64",
+             "{flux}2", "mean over the blocks of (the block's estimate)^2, from the even and from "
+             "the odd batches; kept where cell_batch is not",
              optional=True),
 
     *_labels("account", "group", "tag", "part", "volume", "fate"),

@@ -10,7 +10,7 @@ import numpy as np
 from lumentrace.world.boxes import box_pairs
 from lumentrace.world.geometry import face_boxes, triangle_distance
 from lumentrace.world.inside import is_near, winding
-from lumentrace.world.topology import edges_of, shell_boxes, shell_faces, unbalanced
+from lumentrace.world.topology import edges_of, shell_faces, unbalanced
 
 _AT_ONCE = 256  # points asked at once, so that a plain crossing is found without asking them all
 
@@ -62,7 +62,8 @@ def surface_enters(vertex_a, corner_a, vertex_b, corner_b, distance):
     `distance`. Faces that do not meet the box of b are left out: those that enter b do.
     """
     corner_a = _in_box(vertex_a, corner_a, vertex_b, corner_b, distance)
-    for shell in _shells_near(vertex_a, corner_a, vertex_b, corner_b, distance):
+    for faces in shell_faces(corner_a) if len(corner_a) else ():
+        shell = corner_a[faces]
         probes = _probes(vertex_a, shell, vertex_b, corner_b, distance)
         point = _first_inside(probes, vertex_b, corner_b, distance)
         if point is not None:
@@ -89,15 +90,6 @@ def open_pierced(vertex_a, corner_a, vertex_b, corner_b, distance) -> bool:
     return not is_near(point, vertex_b, rim, distance).all()
 
 
-def _shells_near(vertex_a, corner_a, vertex_b, corner_b, distance):
-    """The shells of a, each (n, 3), whose boxes meet the box of b."""
-    shells = [corner_a[faces] for faces in shell_faces(corner_a)]
-    lower, upper = shell_boxes(vertex_a, shells)
-    box = vertex_b[corner_b].reshape(-1, 3)
-    meets = (upper >= box.min(axis=0) - distance) & (lower <= box.max(axis=0) + distance)
-    return [shells[row] for row in np.flatnonzero(meets.all(axis=1))]
-
-
 def _in_box(vertex, corner, vertex_b, corner_b, distance):
     """The faces of a whose boxes meet the box of b."""
     lower, upper = face_boxes(vertex, corner)
@@ -109,7 +101,6 @@ def _in_box(vertex, corner, vertex_b, corner_b, distance):
 def _probes(vertex_a, corner_a, vertex_b, corner_b, distance):
     """Points of surface a that are inside b if the two cross, (n, 3): middles of the pieces of
     edges that pierce b, and of faces that have all their corners on b."""
-    corner_a = _in_box(vertex_a, corner_a, vertex_b, corner_b, distance)
     ends = edges_of(corner_a).ends
     start, end = vertex_a[ends[:, 0]], vertex_a[ends[:, 1]]
     low, high = np.minimum(start, end), np.maximum(start, end)

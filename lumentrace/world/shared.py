@@ -62,6 +62,7 @@ class _Boxes:
 
     def faces_meet(self, i: int, j: int, distance: float) -> bool:
         """Whether boxes of faces of two bodies come within a distance."""
+        i, j = sorted((i, j), key=lambda row: len(self.bodies[row].corner))
         lower, upper = self._of_faces(i)
         rows, _ = box_pairs(lower - distance, upper + distance, *self._of_faces(j))
         return len(rows) > 0

@@ -245,8 +245,9 @@ def test_the_error_of_a_uniformity_knows_that_cell_and_mean_vary_together():
     assert m["desk.uniformity_split"].error < 1e-12
     # blocks whose variance, all of it in one group, gives the dim cells the same error
     mean, error = found.cell_half.sum(axis=0) / 64, m["desk.min"].error * CELL_AREA
-    found.cell_batch, found.cell_block_square = None, 64 * mean**2
-    found.cell_block_square[0] += 64 * 63 * error**2
+    found.cell_batch = None
+    found.cell_block_square = np.stack([32 * mean**2, 32 * mean**2])
+    found.cell_block_square[:, 0] += 32 * 63 * error**2
     apart = measures(make_run(world(), found))
     assert apart["desk.min"].error == pytest.approx(m["desk.min"].error, rel=1e-9)
     expected = 2 * relative * 12 / 18

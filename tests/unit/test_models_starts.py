@@ -30,7 +30,8 @@ def world(tmp_path_factory):
     repeat = {"count": [2, 1, 1], "step": [10, 0, 0]}
     study.part("block", block, medium="opaque", finish="white", repeat=repeat)
     for name, keys in SHAPES.items():
-        study.source(f"from_{name}", pattern="isotropic", **keys)
+        pattern = "isotropic" if name == "point" else "lambertian"
+        study.source(f"from_{name}", pattern=pattern, **keys)
     return built(study)
 
 
