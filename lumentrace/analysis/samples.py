@@ -63,9 +63,9 @@ def bounds_of(sample: Sample, alpha: float) -> tuple[np.ndarray, np.ndarray]:
 
     All at half the rate: from 1000 effective contributions on the skewness-corrected t; below, the
     Poisson bound on the effective number x the mean weight, which is exact for equal weights only
-    (at the full rate it misses 5.9 % for a stated 5 % with weights of 4 : 1); without a hit 0 and the proven bound, or infinity where none is proven. Below 100, where
-    the strongest contributions may all have been missed, a few weak ones do not lower the upper
-    bound beneath that of no hit.
+    (at the full rate it misses 5.9 % for a stated 5 % with weights of 4 : 1); without a hit 0 and
+    the proven bound, or infinity where none is proven. Below 100, where the strongest contributions
+    may all have been missed, a few weak ones do not lower the upper bound beneath that of no hit.
     """
     hit = sample.effective > 0.0
     number = np.where(hit, sample.effective, 1.0)

@@ -69,8 +69,8 @@ def test_few_contributions_have_poisson_bounds():
     assert 80 < n < 200
     weight = 0.9 / BLOCK_RAYS / 64
     assert bounds(made, "rx.flux", ALPHA) == (
-        pytest.approx(weight * stats.chi2.ppf(ALPHA, 2 * n) / 2, rel=1e-9),
-        pytest.approx(weight * stats.chi2.isf(ALPHA, 2 * n + 2) / 2, rel=1e-9),
+        pytest.approx(weight * stats.chi2.ppf(ALPHA / 2, 2 * n) / 2, rel=1e-9),
+        pytest.approx(weight * stats.chi2.isf(ALPHA / 2, 2 * n + 2) / 2, rel=1e-9),
     )
 
 
@@ -83,10 +83,10 @@ def test_the_bounds_of_a_minimum_take_all_cells():
     weight = 1.0 / BLOCK_RAYS / 64 / CELL_AREA
     n = np.rint(made.map("desk")["value"].values.ravel() / weight)
     assert n.max() < 1000
-    low = stats.chi2.ppf(ALPHA, 2 * n) / 2 * weight
-    low_all = stats.chi2.ppf(ALPHA / 12, 2 * n) / 2 * weight
-    high = stats.chi2.isf(ALPHA, 2 * n + 2) / 2 * weight
-    high_all = stats.chi2.isf(ALPHA / 12, 2 * n + 2) / 2 * weight
+    low = stats.chi2.ppf(ALPHA / 2, 2 * n) / 2 * weight
+    low_all = stats.chi2.ppf(ALPHA / 24, 2 * n) / 2 * weight
+    high = stats.chi2.isf(ALPHA / 2, 2 * n + 2) / 2 * weight
+    high_all = stats.chi2.isf(ALPHA / 24, 2 * n + 2) / 2 * weight
     expected_min = (low.min(), high_all.min())
     assert bounds(made, "desk.min", ALPHA) == pytest.approx(expected_min, rel=1e-9)
     assert bounds(made, "desk.min_split", ALPHA) == pytest.approx(expected_min, rel=1e-9)
