@@ -2,8 +2,9 @@
 
 The stamp of numba's own cache covers only a function's own file, so that a cached caller would go
 on answering with the old code of a callee that was edited in another file. The cache therefore
-lies in a folder named by the digest of all sources that compiled code comes from and of the versions
-of numba and numpy (the processor stands in numba's own stamp), and is set before any is compiled.
+lies in a folder named by the digest of all sources that compiled code comes from and of the
+versions of numba and numpy (the processor stands in numba's own stamp), and is set before any
+kernel is compiled.
 """
 
 import hashlib

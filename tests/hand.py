@@ -15,6 +15,8 @@ from lumentrace.engine.query import closest_hit, new_hits
 from lumentrace.engine.state import LOSSES, new_rays, new_tally, settle
 from lumentrace.engine.sums import LOST_KEPT, account_rows
 from lumentrace.jit import kernel
+from lumentrace.kernels import rng, sampling
+from lumentrace.kernels.vectors import set_vector
 
 _ROOM = 16  # arrivals that are listed; what is beyond is only counted
 
@@ -38,13 +40,17 @@ class Fate(NamedTuple):
 
 
 @kernel
-def _begin(world, origin, direction, i, ray, tally):
+def _begin(world, origin, direction, i, ray, hits, tally):
+    """Start a ray; what it is inside is asked along another line than that which may be aimed."""
     place = (origin[i, 0], origin[i, 1], origin[i, 2])
-    begin(ray, tally, place, (direction[i, 0], direction[i, 1], direction[i, 2]), -1)
+    chance = rng.uniforms(1, np.uint64(2), i, 0, 0, rng.DIRECTION)
+    begin(ray, tally, place, sampling.sphere(chance[0], chance[1]), -1)
     ray.source = 0
     ray.number = i
     ray.wavelength = 555.0
     ray.weight = 1.0
+    find_inside(world, ray, hits)
+    set_vector(ray.direction, (direction[i, 0], direction[i, 1], direction[i, 2]))
 
 
 @kernel
@@ -52,18 +58,16 @@ def _follow_rays(world, rows, origin, direction, rays, hits, tally):
     clear(tally)
     ray = rays[0]
     for i in range(len(origin)):
-        _begin(world, origin, direction, i, ray, tally)
-        find_inside(world, ray, hits)
+        _begin(world, origin, direction, i, ray, hits, tally)
         follow(world, rows, ray, i, hits, tally)
         settle(tally, 0)
 
 
 @kernel
-def _starts(world, origin, direction, rays, hits, tally, inside):
+def _starts(world, origin, rays, hits, tally, inside):
     ray = rays[0]
     for i in range(len(origin)):
-        _begin(world, origin, direction, i, ray, tally)
-        find_inside(world, ray, hits)
+        _begin(world, origin, origin, i, ray, hits, tally)
         for k in range(ray.n_inside):
             inside[i, ray.inside[k]] += 1
 
@@ -114,10 +118,10 @@ def _followed(world, origin, direction) -> Fate:
     return Fate(float(len(origin)), absorbed, *ended, tuple(lost.tolist()))
 
 
-def started_inside(world, origin, direction):
+def started_inside(world, origin):
     """(n, B) how often each body is among those that a ray starts in."""
     inside = np.zeros((len(origin), len(world.body_names)), np.int64)
-    _starts(world.arrays, origin, direction, *_scratch(world), inside)
+    _starts(world.arrays, origin, *_scratch(world), inside)
     return inside
 
 

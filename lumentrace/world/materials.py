@@ -54,7 +54,7 @@ def _lobes(finish: Finish) -> list[tuple[int, float]]:
 def medium_table(scene: Scene, parts: Sequence[BuiltPart]) -> tuple[Media, list[int]]:
     """(media, row of each part): the surroundings, air, then what fills parts; -1: nothing."""
     filled = [built.part.medium for built in parts if built.kind == TRANSPARENT]
-    names = [scene.study.surroundings, AIR]
+    names = [scene.study.surroundings, AIR]  # SURROUNDINGS_ROW, AIR_ROW
     names += [name for name in dict.fromkeys(filled) if name not in names]
     media = [scene.media[name] for name in names]
     rows = [names.index(b.part.medium) if b.kind == TRANSPARENT else -1 for b in parts]

@@ -54,7 +54,9 @@ def closes(world, sums) -> bool:
 def different(one, other, name: str = "sums") -> list[str]:
     """Names of what differs in any bit between two results."""
     if is_dataclass(one):
-        found = [different(getattr(one, f.name), getattr(other, f.name), f.name) for f in fields(one)]
+        found = [
+            different(getattr(one, f.name), getattr(other, f.name), f.name) for f in fields(one)
+        ]
         return sum(found, [])
     if isinstance(one, np.ndarray) and isinstance(other, np.ndarray):
         same = one.shape == other.shape and one.tobytes() == other.tobytes()

@@ -283,7 +283,9 @@ def _add_up(toy: _Toy, keep_batches: bool) -> Sums:
         cell_most=np.minimum(flux_count.sum(axis=1), 1),
         cell_batch=cell_batch if keep_batches else None,
         cell_half=half,
-        cell_block_square=None if keep_batches else np.stack([(by_block[..., half::2] ** 2).sum(axis=-1) for half in (0, 1)]),
+        cell_block_square=None
+        if keep_batches
+        else np.stack([(by_block[..., half::2] ** 2).sum(axis=-1) for half in (0, 1)]),
         cell_square=cell_square,
         paths=_paths(toy),
         what_if=toy.what_if,

@@ -8,7 +8,7 @@ from itertools import permutations, product
 import numpy as np
 import pytest
 
-from tests.hand import started_inside, unit
+from tests.hand import started_inside
 from tests.unit.engine_study import (
     DOWN,
     UP,
@@ -233,7 +233,7 @@ def test_what_a_start_lies_in(new):
     world = world_of(study)
     rng = np.random.default_rng(1)
     place = rng.uniform(-9, 9, (20_000, 3))
-    found = started_inside(world, place, unit(rng.normal(size=place.shape)))
+    found = started_inside(world, place)
     for name, (low, high) in boxes.items():
         expected = ((place > low) & (place < high)).all(axis=1)
         assert (found[:, world.body_names.index(name)] == expected).all(), name

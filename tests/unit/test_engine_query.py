@@ -86,7 +86,9 @@ def test_closest_hit_is_that_of_embree(crowd):
     assert np.abs(found["tfar"] - distance)[same].max() < 1e-3  # grazing hits, in float32
     assert np.median(np.abs(found["tfar"] - distance)) < 20 * 1e-6
     # what remains are rays that pass an edge by less than float32 resolves
-    edge = edge_distance(mesh, prim[differ], origin[differ] + distance[differ, None] * direction[differ])
+    edge = edge_distance(
+        mesh, prim[differ], origin[differ] + distance[differ, None] * direction[differ]
+    )
     assert (same_place | (edge < 20 * 1e-6)).all()
 
 
@@ -148,7 +150,7 @@ def test_a_contact_reaches_over_its_gap(study, gap, together):
     path = study.folder / "study.toml"
     path.write_text(study.text().replace("[study]", "[study]\ntouch = 1e-5"))
     world = build_world(read_scene(path))
-    for direction in (DOWN, (0.6, 0.0, -0.8), (0.99, 0.0, -(1 - 0.99**2) ** 0.5)):
+    for direction in (DOWN, (0.6, 0.0, -0.8), (0.99, 0.0, -((1 - 0.99**2) ** 0.5))):
         found = hits_of(world, (0.3, 0.1, 0.05), direction)
         assert len(found) == (2 if together else 1)
         assert found[0][:2] == ("upper", False)
@@ -231,6 +233,8 @@ def test_slivers_without_area_are_never_hit(study):
     )
     world = built(study)
     rng = np.random.default_rng(4)
-    origin = np.column_stack([np.repeat(rng.uniform(-0.9, 0.9, 2000), 2).reshape(-1, 2), np.ones(2000)])
+    origin = np.column_stack(
+        [np.repeat(rng.uniform(-0.9, 0.9, 2000), 2).reshape(-1, 2), np.ones(2000)]
+    )
     prim, distance = closest_hits(world, origin, np.tile([0.0, 0, -1], (2000, 1)))
     assert (distance == 1).all() and prim.max() < 12

@@ -51,7 +51,9 @@ def test_the_way_is_as_long_as_the_light(hall):
     air = [
         row
         for row in np.flatnonzero(paths.count == 1)
-        if not any(tags[code >> 8].startswith("ball") for code in paths.step[row, : paths.n_steps[row]])
+        if not any(
+            tags[code >> 8].startswith("ball") for code in paths.step[row, : paths.n_steps[row]]
+        )
     ][:40]
     assert len(air) == 40
     for row in air:

@@ -98,7 +98,9 @@ def crossings(world, sums):
         row = texts.index(path)
         count = int(sums.paths.count[row])
         found.append((sums.paths.batch[row].sum() / count * 1024, count))
-        path += ("" if path.endswith(": ") else ", ") + f"{'ab'[(len(found) - 1) % 2]}:default mirror"
+        path += (
+            "" if path.endswith(": ") else ", "
+        ) + f"{'ab'[(len(found) - 1) % 2]}:default mirror"
     return found
 
 
@@ -207,7 +209,7 @@ def test_two_sides_of_a_sheet(study):
 
 
 def test_sampling_is_zero_in_the_mean(study):
-    """A white hall with a lossy glass block: roulette takes and gives alike, walls keep the rest."""
+    """A white hall, a lossy glass block: roulette takes and gives alike, walls keep the rest."""
     study.finish("white", diffuse=0.85, mirror=0.05)
     study.medium("glass", 1.5, 0.2)
     study.part("hall", hollow(box((-2, -2, -2), (2, 2, 2))), medium="opaque", finish="white")

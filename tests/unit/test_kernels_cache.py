@@ -81,7 +81,7 @@ print(bool(emit.stats.cache_hits), cache_folder() and cache_folder().name, answe
 
 @pytest.fixture
 def ask(tmp_path):
-    """(from the cache, folder, answer) of a copy of the compiled sources, in a process of its own."""
+    """(from the cache, folder, answer) of a copy of the compiled sources, in another process."""
     for place in ("__init__.py", "errors.py", *COMPILED):
         source, target = PACKAGE / place, tmp_path / "lumentrace" / place
         target.parent.mkdir(parents=True, exist_ok=True)
