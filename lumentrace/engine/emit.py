@@ -2,7 +2,7 @@
 
 from lumentrace.engine.inside import toggled
 from lumentrace.engine.query import Leaving, cosine_of, find_pair, hit_set, point_of
-from lumentrace.engine.sums import TOO_DEEP, TOO_MANY_AT_ONCE
+from lumentrace.engine.sums import STUCK, TOO_DEEP, TOO_MANY_AT_ONCE
 from lumentrace.jit import kernel
 from lumentrace.kernels import rng
 from lumentrace.kernels.vectors import frame, set_vector, to_scene, vector
@@ -66,8 +66,14 @@ def begin(ray, tally, origin, direction, face):
 
 
 @kernel
+def hops_max(world):
+    """Queries from one surface event to the next that are allowed: far more than can be."""
+    return 1000 + 100 * (len(world.bodies.part) + len(world.detectors.model))
+
+
+@kernel
 def find_inside(world, ray, hits):
-    """Fill in which transparent bodies the start lies in, by what a line from there leaves.
+    """Fill in which transparent bodies the ray's place lies in, by what a line from there leaves.
 
     A body that the line crosses an odd number of times holds the start. The line is the ray's own
     direction, which no mesh is aligned with. Returns -1, or why the ray cannot be followed.
@@ -75,9 +81,9 @@ def find_inside(world, ray, hits):
     mesh, bodies = world.mesh, world.bodies
     direction = vector(ray.direction)
     origin = vector(ray.origin)
-    leaving = Leaving(ray.face, 1.0, ray.fresh)
-    n_inside, n_skipped = 0, 0
-    while True:
+    leaving = Leaving(ray.face, ray.side, ray.fresh)
+    n_inside, n_skipped, crossed = 0, 0, 0
+    for _ in range(hops_max(world)):
         count = hit_set(
             mesh, world.tree, world.detectors, origin, direction, leaving,
             ray.skipped, n_skipped, hits,
@@ -88,7 +94,7 @@ def find_inside(world, ray, hits):
             break
         face = -1
         for i in range(count):
-            ray.skipped[i] = hits.hit[i].prim
+            ray.skipped[(crossed + i) % len(ray.skipped)] = hits.hit[i].prim
             body = hits.hit[i].owner
             if body < 0:
                 continue
@@ -98,7 +104,8 @@ def find_inside(world, ray, hits):
                 n_inside = toggled(ray.inside, n_inside, body)
                 if n_inside < 0:
                     return TOO_DEEP
-        n_skipped = count
+        crossed += count
+        n_skipped = min(crossed, len(ray.skipped))
         if face >= 0:
             origin = point_of(mesh, hits.hit[face])
             hit = hits.hit[face]
@@ -111,6 +118,8 @@ def find_inside(world, ray, hits):
                 origin[2] + t * direction[2],
             )
             leaving = Leaving(leaving.face, leaving.side, leaving.fresh)
+    else:
+        return STUCK
     ray.n_inside = n_inside
     return -1
 

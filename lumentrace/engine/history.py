@@ -2,7 +2,7 @@
 
 from math import inf
 
-from lumentrace.engine.emit import across_the_gap
+from lumentrace.engine.emit import across_the_gap, find_inside, hops_max
 from lumentrace.engine.inside import (
     acting_body,
     contains,
@@ -151,6 +151,15 @@ def dry_partner(mesh, hits, count, acting, before):
 
 
 @kernel
+def comes_to_gap(bodies, hit):
+    """Whether a ray that meets a dry pair comes from the side of its clear face.
+
+    It does from within that part; and from beside it, at the outline of the pair, into the gap.
+    """
+    return bodies.kind[hit.owner] == TRANSPARENT and not hit.front
+
+
+@kernel
 def cross(bodies, ray, hits, count):
     """Fill ray.after: the bodies that the ray is inside once it is through the event's surfaces.
 
@@ -182,6 +191,15 @@ def cross(bodies, ray, hits, count):
             first = i
     ray.n_after = n
     return first
+
+
+@kernel
+def meets_clear(bodies, hits, count):
+    """Whether a surface of a transparent body is among the hits."""
+    for i in range(count):
+        if hits[i].owner >= 0 and bodies.kind[hits[i].owner] == TRANSPARENT:
+            return True
+    return False
 
 
 @kernel
@@ -337,7 +355,7 @@ def follow(world, rows, ray, ray_number, scratch, tally):
         n1 = index_of(media, medium)
         if opaque >= 0:
             partner = dry_partner(mesh, hits, count, opaque, before)
-            if partner >= 0 and hits[partner].owner == before:
+            if partner >= 0 and comes_to_gap(bodies, hits[partner]):
                 set_vector(ray.origin, point_of(mesh, hits[partner]))
                 ray.near, ray.far = hits[partner].prim, hits[opaque].prim
                 ray.side = 1.0 if hits[opaque].front else -1.0
@@ -361,6 +379,7 @@ def follow(world, rows, ray, ray_number, scratch, tally):
             ray.n_skipped = count
             continue
 
+        beside = ray.face >= 0 and hits[acting].t <= 64.0 * hits[acting].reach  # next to its start
         face, front = hits[acting].prim, hits[acting].front
         finish = finish_of(world.tags, mesh.tag[face], front)
         side = act(world, rows, ray, tally, face, finish, n1, n2, factor)
@@ -372,14 +391,16 @@ def follow(world, rows, ray, ray_number, scratch, tally):
             pass_through(ray)
         if side < 0 and partner >= 0:  # through a sheet that lies dry on another face
             ray.near, ray.far = hits[partner].prim, face
+        elif opaque >= 0 and (beside or meets_clear(bodies, hits, count)):
+            # Where an opaque face meets the outline of a clear part only the restart itself tells
+            # whether it lies in that part.
+            ray.n_skipped = 0
+            why = find_inside(world, ray, scratch)
+            if why >= 0:
+                lose(tally, rows, ray, ray_number, why, mesh.tag[face])
+                return
         factor, hops = 1.0, 0
     lose(tally, rows, ray, ray_number, STUCK, mesh.tag[ray.face] if ray.face >= 0 else -1)
-
-
-@kernel
-def hops_max(world):
-    """Queries from one surface event to the next that are allowed: far more than can be."""
-    return 1000 + 100 * (len(world.bodies.part) + len(world.detectors.model))
 
 
 @kernel

@@ -5,6 +5,7 @@ from typing import NamedTuple
 import numpy as np
 
 from lumentrace.world.boxes import box_pairs
+from lumentrace.world.geometry import triangle_distance
 from lumentrace.world.overlap import overlap
 
 _AT_ONCE = 100_000  # pairs compared at once, to bound the memory
@@ -38,7 +39,8 @@ def coplanar_pairs(faces: Faces) -> Pairs:
 
     The larger touch of two faces holds. Planes may differ in direction as far as that distance
     over their smallest altitudes explains. Owners that meet along a line only, in overlaps
-    narrower than that distance, are not in contact.
+    narrower than that distance, are not in contact. Of owners in contact the pairs of faces that
+    lie side by side in one plane, and meet in an edge or a corner, are there too, with area 0.
     """
     a, b = _candidates(faces)
     found = [
@@ -99,6 +101,18 @@ def _compared(faces: Faces, a, b):
     common = overlap(faces.triangle[a], faces.normal[a], faces.triangle[b], faces.normal[b])
     met = (common.area > _THIN * common.perimeter**2) & (common.gap <= distance)
     opposed = (faces.normal[a] * faces.normal[b]).sum(axis=1) < 0
-    pairs = Pairs(a[met], b[met], common.area[met], common.gap[met], opposed[met])
+    # Faces side by side in one plane that meet in an edge or a corner only: no area is in contact,
+    # but a ray that leaves one there is not to meet the other in the same place.
+    apart = np.full(len(a), np.inf)
+    for one, other in ((a, b), (b, a)):
+        for k in range(3):
+            apart = np.minimum(
+                apart, triangle_distance(faces.triangle[one, k], faces.triangle[other])
+            )
+    beside = ~met & (apart <= distance)
+    area = np.where(beside, 0.0, common.area)
+    gap = np.where(beside, apart, common.gap)
+    met = met | beside
+    pairs = Pairs(a[met], b[met], area[met], gap[met], opposed[met])
     # A strip of width w and any length has an area of w/2 times its perimeter.
-    return pairs, (common.area > 0.5 * distance * common.perimeter)[met]
+    return pairs, (~beside & (common.area > 0.5 * distance * common.perimeter))[met]

@@ -86,8 +86,12 @@ def touching(
     part_of = np.array([body.part for body in bodies], np.int64)
     part_a, part_b = part_of[whole.body[a]], part_of[whole.body[b]]
     kind = kinds(parts, part_a, part_b, pairs.opposed[between])
-    refuse_two_finishes(scene, parts, whole.tag[a], whole.tag[b], kind)
-    facts = contact_facts(parts, part_a, part_b, kind, pairs.area[between], pairs.gap[between])
+    area, gaps = pairs.area[between], pairs.gap[between]
+    on_it = area > 0  # not side by side only
+    refuse_two_finishes(scene, parts, whole.tag[a[on_it]], whole.tag[b[on_it]], kind[on_it])
+    facts = contact_facts(
+        parts, part_a[on_it], part_b[on_it], kind[on_it], area[on_it], gaps[on_it]
+    )
     on, detector, gap = _on_detectors(
         pairs.a[~between], (pairs.b[~between] - n_faces) // 2, pairs.gap[~between], n_detectors
     )
@@ -95,7 +99,7 @@ def touching(
         n_faces + n_detectors,
         np.concatenate([a, on]),
         np.concatenate([b, n_faces + detector]),
-        np.concatenate([pairs.gap[between], gap]),
+        np.concatenate([gaps, gap]),
         np.concatenate([kind, np.full(len(on), OPTICAL)]),
     )
     return table, facts
