@@ -19,13 +19,15 @@ def slab(low: float, high: float, half: float = 10.0):
     return box((-half, -half, low), (half, half, high), SIDES)
 
 
-def world_of(study: Study, seed: int = 1, surroundings: str = "air", **settings):
+def world_of(study: Study, seed: int = 1, surroundings="air", touch=None, **settings):
     """The world of a study; settings: keys of its table [trace]."""
     if settings:
         study.tables["trace"] = settings
+    head = f'[study]\nsurroundings = "{surroundings}"'
+    if touch is not None:
+        head += f"\ntouch = {touch!r}"
     path = study.folder / "study.toml"
-    text = study.text().replace("[study]", f'[study]\nsurroundings = "{surroundings}"', 1)
-    path.write_text(text, encoding="utf-8")
+    path.write_text(study.text().replace("[study]", head, 1), encoding="utf-8")
     return api.build(api.load(path, seed))
 
 

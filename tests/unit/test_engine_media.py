@@ -8,7 +8,7 @@ from itertools import permutations, product
 import numpy as np
 import pytest
 
-from tests.hand import started_inside
+from tests.hand import follow_rays, started_inside, unit
 from tests.unit.engine_study import (
     DOWN,
     UP,
@@ -166,6 +166,36 @@ def test_overlapping_parts_by_priority(new, winner, first):
     length = sums.paths.optical[row] / sums.paths.batch[row].sum()
     crown, flint = (2, 1) if winner == "a" else (1, 2)
     assert length == pytest.approx(1 + 1.5 * crown + 1.8 * flint + 1, rel=1e-9)
+
+
+@pytest.mark.parametrize("other", ["flint", "opaque"])
+def test_a_gap_within_touch_changes_nothing(new, other):
+    """Rays aimed at the diagonals by which both faces of a contact are cut into triangles.
+
+    Whether the faces lie in one plane or 1e-6 apart, which triangle of each is met, and that the
+    two need not overlap, must not matter: none is lost, all goes the same way (relative 1e-5).
+    """
+    rng = np.random.default_rng(1)
+    n = 20_000
+    along = rng.uniform(-0.9, 0.9, n)
+    target = np.column_stack([along, along, np.zeros(n)])
+    target[:, :2] += rng.normal(size=(n, 2)) * 2e-6
+    origin = target + 0.05 * unit(rng.normal(size=(n, 3)) * (1, 1, 0) + (0, 0, 0.7))
+    fates = []
+    for gap in (0.0, 1e-6):
+        study = new()
+        study.medium("dark", 1.5, 1.0)
+        study.part("upper", box((-1, -1, 0), (1, 1, 1)), medium="dark")
+        finish = {"finish": "grey"} if other == "opaque" else {}
+        study.part("lower", box((-1, -1, -1), (1, 1, -gap)), medium=other, **finish)
+        study.source("lamp", point=(0, 0, 5))
+        world = world_of(study, touch=1e-4)
+        fates.append(follow_rays(world, origin, unit(target - origin)))
+    for fate in fates:
+        assert fate.lost == () and fate.unresolved == 0
+        assert fate.open < 1e-12
+    assert fates[1].absorbed == pytest.approx(fates[0].absorbed, rel=1e-5)
+    assert fates[1].escaped == pytest.approx(fates[0].escaped, rel=1e-5)
 
 
 def test_a_hidden_part_changes_nothing(new):

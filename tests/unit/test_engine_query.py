@@ -8,9 +8,8 @@ import pytest
 from lumentrace.engine.query import NOWHERE, Leaving, closest_hit, hit_set, new_hits
 from lumentrace.jit import kernel
 from lumentrace.kernels.triangle import intersect, shear
-from lumentrace.scene.read import read_scene
-from lumentrace.world.build import build_world
 from tests.hand import closest_hits, unit
+from tests.unit.engine_study import world_of
 from tests.unit.world_study import built, new_study
 from tests.worlds import box, cylinder, hollow, rectangle, sphere
 
@@ -147,9 +146,7 @@ def test_faces_in_contact_are_one_event(study):
 def test_a_contact_reaches_over_its_gap(study, gap, together):
     """Within `touch` the two faces are one event though they are apart; oblique too."""
     stacked(study, gap)
-    path = study.folder / "study.toml"
-    path.write_text(study.text().replace("[study]", "[study]\ntouch = 1e-5"))
-    world = build_world(read_scene(path))
+    world = world_of(study, touch=1e-5)
     for direction in (DOWN, (0.6, 0.0, -0.8), (0.99, 0.0, -((1 - 0.99**2) ** 0.5))):
         found = hits_of(world, (0.3, 0.1, 0.05), direction)
         assert len(found) == (2 if together else 1)
